@@ -1,0 +1,7 @@
+"""The measured discharge: reading a record, with a receipt of how it was understood."""
+
+from hydroyield.record.options import RecordOptions
+from hydroyield.record.reading import read_record
+from hydroyield.record.result import Dropped, Receipt, Record
+
+__all__ = ["Dropped", "Receipt", "Record", "RecordOptions", "read_record"]
