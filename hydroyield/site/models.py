@@ -1,0 +1,87 @@
+"""The site file as a whole: what may be written, in which unit, and what it means.
+
+The text under each field is its documentation; the reference page of the site file is made from
+it. After validation every number is in SI: areas in m2, powers in W, discharges in m3/s, shares
+as fractions, percentages in per cent, temperatures in degC and angles in degrees. A number given
+from Python is in the unit that the field states, like a number in a site file.
+"""
+
+from __future__ import annotations
+
+from typing import Annotated, Any, ClassVar, Literal
+
+from pydantic import BeforeValidator, Field
+
+from hydroyield.quantities import ANGLE, LENGTH, TEMPERATURE
+from hydroyield.site.blocks import Block
+from hydroyield.site.discharge_models import Discharge
+from hydroyield.site.faults import flow, shown
+from hydroyield.site.fields import ListOf, Quantity, Text, scalar_text
+from hydroyield.site.head_models import Head
+from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup, WaterwayLoss
+from hydroyield.site.river_models import Abstraction, ConstantRule, Rule
+
+
+class Site(Block):
+    """The place."""
+
+    example: ClassVar[dict[str, Any]] = {"name": "Larkbeck Weir"}
+
+    name: Text = Field(description="Name of the site.", examples=["Larkbeck Weir"])
+    latitude: Annotated[float, Quantity(ANGLE, at_least=-90, at_most=90)] | None = Field(
+        default=None,
+        description="Latitude [degrees], north positive; gives gravity, 9.81 m/s2 if left out.",
+    )
+    altitude: Annotated[float, Quantity(LENGTH, at_least=-500, at_most=6000)] | None = Field(
+        default=None, description="Altitude above sea level [m]; gives gravity, 0 m if left out."
+    )
+    water_temperature: Annotated[float, Quantity(TEMPERATURE, at_least=0, at_most=40)] | None = (
+        Field(
+            default=None,
+            description="Mean water temperature [degC]; gives density, 1000 kg/m3 if left out.",
+        )
+    )
+
+
+def _read_format(value: object) -> int:
+    text = scalar_text(value, "the number of the format", "1")
+    if text != "1":
+        raise ValueError(f"format '{shown(text)}' is not read by this version; write format: 1")
+    return 1
+
+
+class SiteFile(Block):
+    """A small run-of-river hydropower site."""
+
+    example: ClassVar[dict[str, Any]] = {"format": 1, "site": Site.example}
+
+    format: Annotated[Literal[1], BeforeValidator(_read_format)] = Field(
+        description="Version of the format of this file: 1.", examples=[1]
+    )
+    site: Site = Field(description="Which site it is, and where.", examples=[Site.example])
+    discharge: Discharge = Field(
+        description="Where the discharge of the river comes from.", examples=[Discharge.example]
+    )
+    environmental_flow: Annotated[tuple[Rule, ...], ListOf(flow(ConstantRule.example))] = Field(
+        default=(),
+        description="Rules for the water that stays in the river; the largest applies, and never "
+        "more than the inflow. None if left out.",
+    )
+    abstractions: Annotated[tuple[Abstraction, ...], ListOf(flow(Abstraction.example))] = Field(
+        default=(), description="Other water that does not reach the turbines. None if left out."
+    )
+    head: Head = Field(description="Levels above and below the turbines.", examples=[Head.example])
+    waterway: Annotated[tuple[WaterwayLoss, ...], ListOf(flow(WaterwayLoss.example))] = Field(
+        default=(),
+        description="Losses between headwater and turbines, which add up. None if left out.",
+    )
+    turbines: Annotated[tuple[TurbineGroup, ...], ListOf(flow(TurbineGroup.example), 1)] = Field(
+        description="Groups of equal units, at least one.", examples=[[TurbineGroup.example]]
+    )
+    electrical: Electrical = Field(
+        default_factory=Electrical,
+        description="From the turbine shaft to the grid. Nothing is lost or limited if left out.",
+    )
+    operation: Operation = Field(
+        default_factory=Operation, description="How the plant is run. Always on if left out."
+    )

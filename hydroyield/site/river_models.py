@@ -1,0 +1,169 @@
+"""Water that does not reach the turbines: environmental flow and other abstractions."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Annotated, Any, ClassVar, Literal
+
+from pydantic import AfterValidator, BeforeValidator, Field, WrapValidator
+from pydantic import ValidatorFunctionWrapHandler as Handler
+
+from hydroyield.quantities import DISCHARGE, PERCENT, SHARE
+from hydroyield.site.blocks import Block
+from hydroyield.site.faults import closest, flow, refuse, shown
+from hydroyield.site.fields import ListOf, Quantity, Switch, Text, Whole
+
+MONTHS_PER_YEAR = 12
+ReservedDischarge = Annotated[float, Quantity(DISCHARGE, at_least=0)]
+
+
+def _twelve(values: tuple[float, ...]) -> tuple[float, ...]:
+    if len(values) != MONTHS_PER_YEAR:
+        raise ValueError(f"has {len(values)} values; write 12, one for each month, January first")
+    return values
+
+
+class ConstantRule(Block):
+    """The same discharge stays in the river all year."""
+
+    example: ClassVar[dict[str, Any]] = {"rule": "constant", "discharge": "0.6 m3/s"}
+
+    rule: Literal["constant"] = Field(description="Name of the rule.", examples=["constant"])
+    discharge: ReservedDischarge = Field(
+        description="Discharge that stays in the river [m3/s].", examples=["0.6 m3/s"]
+    )
+
+
+class MonthlyRule(Block):
+    """A discharge for each calendar month stays in the river."""
+
+    example: ClassVar[dict[str, Any]] = {"rule": "monthly", "discharge": [0.6] * MONTHS_PER_YEAR}
+
+    rule: Literal["monthly"] = Field(description="Name of the rule.", examples=["monthly"])
+    discharge: Annotated[
+        tuple[ReservedDischarge, ...], AfterValidator(_twelve), ListOf("0.6 m3/s, ...")
+    ] = Field(
+        description="Discharges that stay in the river [m3/s]: 12 values, January first.",
+        examples=[[0.6] * MONTHS_PER_YEAR],
+    )
+
+
+class ExceedanceRule(Block):
+    """The discharge equalled or exceeded in a percentage of the days stays in the river."""
+
+    example: ClassVar[dict[str, Any]] = {"rule": "exceedance", "percent": 95}
+
+    rule: Literal["exceedance"] = Field(description="Name of the rule.", examples=["exceedance"])
+    percent: Annotated[float, Quantity(PERCENT, above=0, below=100)] = Field(
+        description="Percentage of all days at which the discharge is equalled or exceeded [%]; "
+        "95 stands for Q95.",
+        examples=[95],
+    )
+
+
+class MeanShareRule(Block):
+    """A share of the mean discharge of the record at the site stays in the river."""
+
+    example: ClassVar[dict[str, Any]] = {"rule": "mean_share", "share": "10 %"}
+
+    rule: Literal["mean_share"] = Field(description="Name of the rule.", examples=["mean_share"])
+    share: Annotated[float, Quantity(SHARE, at_least=0, at_most=1)] = Field(
+        description="Share of the mean discharge [share or %].", examples=["10 %"]
+    )
+
+
+class InflowShareRule(Block):
+    """Everything up to a discharge, and a share of what exceeds it, stays in the river."""
+
+    example: ClassVar[dict[str, Any]] = {
+        "rule": "inflow_share",
+        "share": "50 %",
+        "above": "1.2 m3/s",
+    }
+
+    rule: Literal["inflow_share"] = Field(
+        description="Name of the rule.", examples=["inflow_share"]
+    )
+    share: Annotated[float, Quantity(SHARE, at_least=0, at_most=1)] = Field(
+        description="Share of the inflow above the given discharge [share or %].",
+        examples=["50 %"],
+    )
+    above: ReservedDischarge = Field(
+        description="Discharge up to which everything stays in the river [m3/s].",
+        examples=["1.2 m3/s"],
+    )
+
+
+AnyRule = ConstantRule | MonthlyRule | ExceedanceRule | MeanShareRule | InflowShareRule
+RULES: dict[str, type[Block]] = {
+    "constant": ConstantRule,
+    "monthly": MonthlyRule,
+    "exceedance": ExceedanceRule,
+    "mean_share": MeanShareRule,
+    "inflow_share": InflowShareRule,
+}
+
+
+def _read_rule(written: Any, handler: Handler) -> Any:
+    """Hand a rule to the model that its name asks for, so that only that model's faults show."""
+    if isinstance(written, Block):
+        return handler(written)
+    if not isinstance(written, Mapping):
+        raise ValueError(f"'{shown(written)}' is no rule; write {flow(ConstantRule.example)}")
+    if "rule" not in written:
+        refuse([(("rule",), f"is missing; write rule: and one of {', '.join(RULES)}")])
+    name = written["rule"]
+    if not isinstance(name, str) or name not in RULES:
+        meant = closest(str(name), RULES)
+        hint = f"; did you mean {meant}?" if meant else ""
+        known = ", ".join(RULES)
+        refuse([(("rule",), f"'{shown(name)}' is no rule; write one of {known}{hint}")])
+    return RULES[name].model_validate(written)
+
+
+Rule = Annotated[AnyRule, Field(discriminator="rule"), WrapValidator(_read_rule)]
+
+
+def _months(months: Any) -> Any:
+    if not months:
+        raise ValueError("the list is empty; name months, such as [3, 4, 5], or take the key out")
+    return months
+
+
+def _different(months: tuple[int, ...]) -> tuple[int, ...]:
+    twice = sorted({month for month in months if months.count(month) > 1})
+    if twice:
+        raise ValueError(f"month {twice[0]} stands twice; name each month once")
+    return months
+
+
+Months = Annotated[
+    tuple[Annotated[int, Whole(1, 12)], ...],
+    AfterValidator(_different),
+    BeforeValidator(_months),
+    ListOf("3, 4, 5"),
+]
+
+
+class Abstraction(Block):
+    """Other water that does not reach the turbines."""
+
+    example: ClassVar[dict[str, Any]] = {"name": "fish pass", "discharge": "0.15 m3/s"}
+
+    name: Text = Field(description="What takes the water.", examples=["fish pass"])
+    discharge: ReservedDischarge = Field(
+        description="Discharge taken [m3/s].", examples=["0.15 m3/s"]
+    )
+    months: Months | None = Field(
+        default=None, description="Months in which it is taken, 1 to 12; all year if left out."
+    )
+    counts_as_environmental_flow: Switch = Field(
+        default=False,
+        description="Whether the water counts towards the environmental flow, as that of a fish "
+        "pass may: true or false; false if left out.",
+    )
+    returns: Switch = Field(
+        default=True,
+        description="Whether the water is back in the river at the tailwater: true or false; true "
+        "if left out.",
+    )
