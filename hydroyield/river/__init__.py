@@ -1,0 +1,19 @@
+"""The river at the site: duration curves, hydrological years, what must stay in it, and cells."""
+
+from hydroyield.river.cells import Cells, condense
+from hydroyield.river.duration import characteristic_discharge, exceedance_percent, quantile
+from hydroyield.river.reserve import Abstraction, InflowShare, WaterRules
+from hydroyield.river.years import Calendar, usable_years
+
+__all__ = [
+    "Abstraction",
+    "Calendar",
+    "Cells",
+    "InflowShare",
+    "WaterRules",
+    "characteristic_discharge",
+    "condense",
+    "exceedance_percent",
+    "quantile",
+    "usable_years",
+]

@@ -1,0 +1,103 @@
+"""The record condensed once: distinct pairs of season and river discharge, and how often each occurs.
+
+Power depends on the river's discharge and, through the rules, on the season. So every plant is
+evaluated on the distinct pairs only, and energy by month and year follows from counting days: the
+day-by-day run to rounding. Gauges report few digits, so a long record has far fewer cells than days.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.river.years import Calendar, MonthTable
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+
+@dataclass(frozen=True)
+class Cells:
+    """Distinct states of the river over the years used, and the days in each.
+
+    discharge : (c,) river discharge [m3/s]
+    season : (c,) season, see `WaterRules`
+    cell_of_day : (d,) cell of each day with a value
+    month_of_day : (d,) 12 * year index + month - 1 of each day with a value
+    years : (y,) names of the years used
+    hours : (y, 12) hours of each month, January first
+    valid_days : (y, 12) days with a value
+    """
+
+    discharge: Floats
+    season: Ints
+    cell_of_day: Ints
+    month_of_day: Ints
+    years: Ints
+    hours: Floats
+    valid_days: Ints
+
+    @property
+    def hours_per_year(self) -> float:
+        """Mean hours of the years used."""
+        return float(self.hours.sum() / self.years.size)
+
+    @cached_property
+    def weight(self) -> Floats:
+        """(c,) hours a year that each cell stands for; they add up to `hours_per_year`."""
+        hours_of_day = (self.hours / self.valid_days / self.years.size).ravel()[self.month_of_day]
+        return np.bincount(self.cell_of_day, hours_of_day, self.discharge.size)
+
+    def mean(self, values: Floats) -> float:
+        """Mean over the hours of the years used of a quantity given by cell, (c,)."""
+        return self.per_year(values) / self.hours_per_year
+
+    def per_year(self, values: Floats) -> float:
+        """Yearly sum of a rate given by cell, (c,): W becomes Wh a year."""
+        return float((self.weight * values).sum())
+
+    def by_month(self, values: Floats) -> Floats:
+        """Sums of a rate given by cell, for each year and month: W becomes Wh.
+
+        values : (c,) rate per hour
+
+        Returns (y, 12), January first: the mean over the valid days times the hours of the month.
+        """
+        totals = np.bincount(self.month_of_day, values[self.cell_of_day], self.hours.size)
+        return totals.reshape(self.hours.shape) * (self.hours / self.valid_days)
+
+
+def condense(
+    discharge: Floats,
+    calendar: Calendar,
+    months: MonthTable,
+    used: NDArray[np.bool_],
+    season_of_month: Ints,
+) -> Cells:
+    """Condense a daily series into cells.
+
+    discharge : (n,) of every day, nan where missing [m3/s]
+    calendar : of the same days
+    months, used : from `count_months` and `usable_years`
+    season_of_month : (12,), see `WaterRules`
+    """
+    new_row = np.cumsum(used) - 1
+    row = calendar.year - months.years[0]
+    chosen = used[row] & ~np.isnan(discharge)
+    month = calendar.month[chosen]
+    distinct, rank = np.unique(discharge[chosen], return_inverse=True)
+    pairs, cell_of_day = np.unique(
+        season_of_month[month - 1] * distinct.size + rank, return_inverse=True
+    )
+    return Cells(
+        discharge=distinct[pairs % distinct.size],
+        season=pairs // distinct.size,
+        cell_of_day=cell_of_day,
+        month_of_day=12 * new_row[row[chosen]] + month - 1,
+        years=months.years[used],
+        hours=months.hours[used],
+        valid_days=months.valid[used],
+    )
