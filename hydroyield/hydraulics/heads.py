@@ -1,0 +1,115 @@
+"""Gross and net head at a river discharge and a turbine discharge.
+
+Head ends at the tailwater, or at the axis of an impulse machine. Waterway losses belong to the
+turbine discharge of the whole plant.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.hydraulics.levels import Level, Weir
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Heads:
+    """The levels and losses of a site.
+
+    headwater : level against river discharge; a `Weir` sees what is left after turbines and
+        abstractions
+    tailwater : level against the discharge that it follows
+    follows_turbine : the tailwater follows the turbine discharge (a separate tailrace) and not
+        the river
+    loss_coefficient : k of h = k Q^2, Q of the whole plant [m per (m3/s)^2]
+    """
+
+    headwater: Level
+    tailwater: Level
+    follows_turbine: bool = False
+    loss_coefficient: float = 0.0
+
+    def at(self, discharge: Floats, abstracted: Floats, unreturned: Floats) -> HeadState:
+        """The levels at given states of the river.
+
+        discharge : (n,) river discharge [m3/s]
+        abstracted : (n,) all abstractions [m3/s]
+        unreturned : (n,) abstractions that do not come back above the tailwater [m3/s]
+        """
+        over_weir = isinstance(self.headwater, Weir)
+        below = np.maximum(0.0, discharge - unreturned)
+        return HeadState(
+            self,
+            after_abstraction=discharge - abstracted if over_weir else None,
+            fixed_headwater=None if over_weir else self.headwater(discharge),
+            fixed_tailwater=None if self.follows_turbine else self.tailwater(below),
+        )
+
+
+@dataclass(frozen=True)
+class HeadState:
+    """Levels at n states of the river, open in the turbine discharge t (n,) [m3/s].
+
+    Whatever does not depend on t is computed once.
+    """
+
+    heads: Heads
+    after_abstraction: Floats | None
+    fixed_headwater: Floats | None
+    fixed_tailwater: Floats | None
+
+    def __getitem__(self, chosen: NDArray[np.intp] | NDArray[np.bool_]) -> HeadState:
+        """The chosen states only."""
+
+        def part(values: Floats | None) -> Floats | None:
+            return None if values is None else values[chosen]
+
+        return HeadState(
+            self.heads,
+            part(self.after_abstraction),
+            part(self.fixed_headwater),
+            part(self.fixed_tailwater),
+        )
+
+    @property
+    def size(self) -> int:
+        """Number of states."""
+        known = (self.after_abstraction, self.fixed_headwater, self.fixed_tailwater)
+        return next(values.size for values in known if values is not None)
+
+    @property
+    def depends_on_turbines(self) -> bool:
+        """Whether the net head changes with the turbine discharge."""
+        levels_fixed = self.fixed_headwater is not None and self.fixed_tailwater is not None
+        return not (levels_fixed and self.heads.loss_coefficient == 0)
+
+    def headwater(self, turbined: Floats) -> Floats:
+        """Headwater level [m]."""
+        if self.fixed_headwater is not None:
+            return self.fixed_headwater
+        return self.heads.headwater(self.after_abstraction - turbined)
+
+    def tailwater(self, turbined: Floats) -> Floats:
+        """Tailwater level [m]."""
+        if self.fixed_tailwater is not None:
+            return self.fixed_tailwater
+        return self.heads.tailwater(turbined)
+
+    def gross(self, turbined: Floats, axis_level: float | None = None) -> Floats:
+        """Gross head [m], never below 0: down to the tailwater, or to `axis_level` [m]."""
+        lower = self.tailwater(turbined) if axis_level is None else axis_level
+        return np.maximum(0.0, self.headwater(turbined) - lower)
+
+    def loss(self, turbined: Floats) -> Floats:
+        """Head lost in the waterway [m]."""
+        return self.heads.loss_coefficient * turbined**2
+
+    def net(self, turbined: Floats, axis_level: float | None = None) -> Floats:
+        """Net head [m]; negative where the losses exceed the gross head."""
+        return self.gross(turbined, axis_level) - self.loss(turbined)
+
+
