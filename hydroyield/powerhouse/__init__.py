@@ -1,0 +1,19 @@
+"""Turbines, generators and how the units of a plant share the water."""
+
+from hydroyield.powerhouse.dispatch import HeadLines
+from hydroyield.powerhouse.operation import Dispatcher, Operation, operate
+from hydroyield.powerhouse.types import MachineType, machine_types
+from hydroyield.powerhouse.units import EfficiencyCurve, Electrical, Plant, UnitGroup
+
+__all__ = [
+    "Dispatcher",
+    "EfficiencyCurve",
+    "Electrical",
+    "HeadLines",
+    "MachineType",
+    "Operation",
+    "Plant",
+    "UnitGroup",
+    "machine_types",
+    "operate",
+]

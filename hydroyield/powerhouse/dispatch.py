@@ -1,0 +1,344 @@
+"""Best sharing of a total discharge among units, as tables over head and discharge.
+
+Units share a waterway, so at a given total discharge the head at the units is known. At that head
+the best sharing is a max-plus sum over the units' power: the best of a and b together at k steps is
+the largest a(i) + b(k - i). Units of one group are not assumed to share equally; where efficiency
+rises steeply with discharge it is often better to run one unit full and another low.
+
+A table has a row for each node of head, and columns in shares of the discharge of the fully open
+plant. In these shares the minimum and the full opening of a unit hardly move with head, so the
+number of columns is chosen such that both fall on columns.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.powerhouse.units import Plant, UnitGroup
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+# Rows stand at even steps of head, and at even shares of the heads that occur:
+HEAD_NODES = (24, 40)  # where heads of all groups end at one level
+HEAD_NODES_OF_TWO_LINES = (8, 20)  # where some end at the tailwater and some at an axis
+COLUMNS_PER_UNIT = 96
+COLUMNS = (256, 1024)  # fewest and most, before the search for the number that fits
+COLUMNS_OF_UNLIKE_UNITS = 512  # fewest, where units differ in size or curve
+
+
+@dataclass(frozen=True)
+class HeadLines:
+    """The distinct lower ends of head in a plant: the tailwater (None) and the axis levels.
+
+    A tailwater line and an axis line vary independently; two axis lines differ by a constant.
+    """
+
+    lower_ends: tuple[float | None, ...]
+    line_of_group: tuple[int, ...]
+
+    @classmethod
+    def of(cls, groups: tuple[UnitGroup, ...]) -> HeadLines:
+        ends = sorted({g.axis_level for g in groups}, key=lambda e: (e is not None, e or 0.0))
+        return cls(tuple(ends), tuple(ends.index(g.axis_level) for g in groups))
+
+    @property
+    def free(self) -> tuple[int, ...]:
+        """Lines that span all heads: the tailwater and the first axis, as far as they occur."""
+        kinds = [end is None for end in self.lower_ends]
+        return tuple(kinds.index(kind) for kind in (True, False) if kind in kinds)
+
+
+class DispatchTable:
+    """Largest output of a set of units against the heads of its lines and the total discharge.
+
+    output : called with heads (lines, n) [m] and total discharge (n,) [m3/s]
+    """
+
+    def __init__(self, plant: Plant, lines: HeadLines, seen: Floats) -> None:
+        """Tabulate `plant` for heads like those `seen` (lines, m) [m], the highest among them."""
+        self.plant, self.lines = plant, lines
+        self._nodes = [self._head_nodes(line, seen[line]) for line in lines.free]
+        self._z = [self._stretched(nodes) for nodes in self._nodes]
+        self._row_heads = self._heads_of_rows()
+        self._row_z = self._reference(self._row_heads)
+        self._unit_steps, self._columns = self._choose_steps()
+        self._stages = self._combine()
+        self._values = self._stages[-1]
+        self._width = self._values.shape[1]
+
+    # --- what the table is laid on -------------------------------------------------------------
+
+    @property
+    def _alike(self) -> bool:
+        """Whether the full discharges of all groups scale alike with head."""
+        exponents = {group.head_exponent for group in self.plant.groups}
+        return len(exponents) == 1 and len(self.lines.lower_ends) == 1
+
+    def _stretched(self, head: Floats) -> Floats:
+        """Scale on which the power of an open unit is linear: H^1.5, for screws H."""
+        largest = max(group.head_exponent for group in self.plant.groups)
+        return np.asarray(head * np.sqrt(head) if largest else head)
+
+    def _reference(self, heads: Floats) -> Floats:
+        """Scale of power at heads (lines, n): the sum of the stretched heads of the free lines."""
+        return sum((self._stretched(heads[line]) for line in self.lines.free), np.float64(0))
+
+    def _head_nodes(self, line: int, seen: Floats) -> Floats:
+        """Heads of the rows: 0, the heads at which a capacity begins to limit, and some more.
+
+        Below every limit the rows of units that scale alike with head are one, and need no nodes.
+        """
+        highest = max(1e-3, float(seen.max())) * (1 + 1e-9)
+        limits = [
+            self._limiting_head(group)
+            for group, own in zip(self.plant.groups, self.lines.line_of_group, strict=True)
+            if own == line
+        ]
+        limits = [head for head in limits if head < highest]
+        if self._alike and not limits:
+            return np.array([0.0, highest])
+        lowest = min(limits) if self._alike else 0.0
+        even, shares = HEAD_NODES if len(self.lines.free) == 1 else HEAD_NODES_OF_TWO_LINES
+        inner = seen[(seen > lowest) & (seen < highest)]
+        spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else []
+        return _apart([0.0, *limits, *np.linspace(lowest, highest, even), *spread])
+
+    def _limiting_head(self, group: UnitGroup) -> float:
+        """Net head above which a unit can exceed its capacity."""
+        rated = self.plant.terminal_weight * group.rated_discharge * group.rated_head
+        rated *= group.best_relative_output
+        ratio = group.unit_capacity / max(rated, 1e-300)
+        return float(group.rated_head * ratio ** (1 / (1 + group.head_exponent)))
+
+    def _heads_of_rows(self) -> Floats:
+        """(lines, rows) head of each line in each row."""
+        grid = np.stack(np.meshgrid(*self._nodes, indexing="ij")).reshape(len(self._nodes), -1)
+        ends = self.lines.lower_ends
+        heads = np.empty((len(ends), grid.shape[1]))
+        for row, line in zip(grid, self.lines.free, strict=True):
+            for other, end in enumerate(ends):
+                if end is None and ends[line] is None:
+                    heads[other] = row
+                elif end is not None and ends[line] is not None:
+                    heads[other] = np.maximum(0.0, row + (ends[line] or 0.0) - end)
+        return heads
+
+    def full_discharges(self, heads: Floats) -> Floats:
+        """(groups, n) discharge of one fully open unit of each group [m3/s]."""
+        return np.stack(
+            [
+                group.full_discharge(heads[line])
+                for group, line in zip(self.plant.groups, self.lines.line_of_group, strict=True)
+            ]
+        )
+
+    def full_discharge(self, heads: Floats) -> Floats:
+        """(n,) discharge of all units fully open [m3/s] at heads (lines, n) [m]."""
+        return sum(
+            (
+                group.count * full
+                for group, full in zip(
+                    self.plant.groups, self.full_discharges(heads), strict=True
+                )
+            ),
+            np.float64(0),
+        )
+
+    def _choose_steps(self) -> tuple[Ints, Ints]:
+        """(groups, rows) steps of a fully open unit, and (rows,) columns of the open plant.
+
+        The number of columns is the one at which full openings and minima fall closest to columns.
+        """
+        counts = np.array([group.count for group in self.plant.groups])
+        minima = np.array([group.minimum_share for group in self.plant.groups])
+        # at no head every unit would be shut: take the shares of a small one
+        heads = np.maximum(self._row_heads, 1e-6)
+        shares = self.full_discharges(heads[:, :1] if self._alike else heads)
+        shares = shares / (counts @ shares)
+        fewest = int(np.clip(COLUMNS_PER_UNIT * counts.sum(), *COLUMNS))
+        if counts.size > 1:
+            fewest = max(fewest, COLUMNS_OF_UNLIKE_UNITS)
+        tried = np.arange(fewest, 2 * fewest)
+        exact = shares[:, :, None] * tried  # (groups, rows, tried)
+        steps = np.maximum(1, np.rint(exact))
+        least = minima[:, None, None] * exact
+        off = np.maximum(np.abs(exact - steps), np.abs(least - np.rint(least))).max(axis=0)
+        best = off.argmin(axis=1)
+        chosen = np.take_along_axis(steps, best[None, :, None], axis=2)[:, :, 0].astype(np.int64)
+        chosen = np.broadcast_to(chosen, (counts.size, self._row_heads.shape[1]))
+        return chosen, np.asarray((counts[:, None] * chosen).sum(axis=0))
+
+    # --- the table ------------------------------------------------------------------------------
+
+    def _unit_output(self, number: int) -> Floats:
+        """(rows, steps + 1) output of one unit of a group over the scale of its row; -inf where
+        it cannot run at that discharge, 0 at a stand."""
+        group, steps = self.plant.groups[number], self._unit_steps[number]
+        head = self._row_heads[self.lines.line_of_group[number]]
+        column = np.arange(steps.max() + 1)
+        share = column / steps[:, None]
+        first = np.rint(group.minimum_share * steps)[:, None]
+        runs = (column >= first) & (column <= steps[:, None])
+        share = np.clip(share, group.minimum_share, 1.0)
+        # rows at no head borrow the shape of a small head, so that all rows have one scale
+        head = np.maximum(head, 1e-6)
+        scale = self._reference(np.maximum(self._row_heads, 1e-6))[:, None]
+        open_output = (self.plant.terminal_weight * group.full_discharge(head) * head)[:, None]
+        if self._alike and steps.min() == steps.max():
+            relative = np.broadcast_to(share[:1] * group.curve(share[:1]), share.shape)
+        else:
+            relative = share * group.curve(share)
+        output = np.minimum(open_output * relative, group.unit_capacity) / scale
+        output = np.where(runs, output, -np.inf)
+        output[:, 0] = np.maximum(0.0, output[:, 0])
+        return output
+
+    def _combine(self) -> list[Floats]:
+        """Tables of the first, the first two, ... units in the order of the groups."""
+        stages: list[Floats] = []
+        for number, group in enumerate(self.plant.groups):
+            unit = self._unit_output(number)
+            for _ in range(group.count):
+                stages.append(max_plus(stages[-1], unit) if stages else unit)
+        return stages
+
+    @cached_property
+    def _best_below(self) -> Ints:
+        """(rows, columns) column of the largest output at or below each column, the first of equals."""
+        running = np.maximum.accumulate(self._values, axis=1)
+        earlier = np.concatenate([np.full((running.shape[0], 1), -np.inf), running[:, :-1]], axis=1)
+        tolerance = 1e-12 * np.abs(np.where(np.isfinite(earlier), earlier, 0.0))
+        better = running > earlier + tolerance
+        column = np.where(better, np.arange(self._width), 0)
+        return np.asarray(np.maximum.accumulate(column, axis=1))
+
+    # --- reading it -----------------------------------------------------------------------------
+
+    def _corners(self, heads: Floats) -> list[tuple[Ints, Floats]]:
+        """Rows around heads (lines, n), and the weight of each in the scaled output."""
+        corners: list[tuple[Ints, Floats]] = [
+            (np.zeros(heads.shape[1], dtype=np.int64), np.ones(heads.shape[1]))
+        ]
+        for nodes, line in zip(self._z, self.lines.free, strict=True):
+            z = np.clip(self._stretched(heads[line]), 0, nodes[-1])
+            low = np.clip(np.searchsorted(nodes, z, side="right") - 1, 0, nodes.size - 2)
+            part = (z - nodes[low]) / (nodes[low + 1] - nodes[low])
+            corners = [
+                (row * nodes.size + low + step, weight * share)
+                for row, weight in corners
+                for step, share in ((0, 1 - part), (1, part))
+            ]
+        return [(row, weight * self._row_z[row]) for row, weight in corners]
+
+    def output(self, heads: Floats, discharge: Floats) -> Floats:
+        """Largest output of units that pass exactly this total.
+
+        heads : (lines, n) net heads [m]
+        discharge : (n,) [m3/s]
+
+        Returns (n,) [W], -inf where no sharing passes exactly this total.
+        """
+        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
+        total, settled = np.zeros(discharge.shape), np.zeros(discharge.shape)
+        weights = np.zeros(discharge.shape)
+        for row, weight in self._corners(heads):
+            value = self._along(row, share)
+            usable = np.isfinite(value)
+            total += np.where(usable, weight * np.where(usable, value, 0.0), 0.0)
+            settled += np.where(usable, weight, 0.0)
+            weights += weight
+        # rows of unlike groups may disagree near an edge: the nearer row decides
+        feasible = (settled > 0.5 * weights) & (share <= 1 + 1e-6)
+        scale = np.divide(weights, settled, out=np.zeros_like(weights), where=settled > 0)
+        return np.where(feasible, total * scale, np.where(discharge == 0, 0.0, -np.inf))
+
+    def _along(self, row: Ints, share: Floats) -> Floats:
+        """Scaled output in given rows at shares of the open plant's discharge."""
+        position = share * self._columns[row]
+        nearest = np.rint(position)
+        position = np.where(np.abs(position - nearest) < 1e-5 * self._width, nearest, position)
+        position = np.clip(position, 0, self._columns[row])
+        low = position.astype(np.int64)
+        part = position - low
+        flat = self._values.ravel()
+        start = row * self._width + low
+        left = flat[start]
+        right = flat[start + (part > 0)]
+        with np.errstate(invalid="ignore"):  # -inf beside a number: no sharing passes this total
+            return np.where(part > 0, left + part * (right - left), left)
+
+    def best_share_below(self, heads: Floats, discharge: Floats) -> Floats:
+        """Share of the open plant's discharge with the largest output at or below `discharge`.
+
+        heads : (lines, n) net heads, held constant [m]
+        discharge : (n,) [m3/s]
+
+        Returns (n,), the least of equals, on a column of the table.
+        """
+        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
+        row = self._nearest_row(heads)
+        low = np.floor(np.minimum(share, 1.0) * self._columns[row] + 1e-6).astype(np.int64)
+        return np.asarray(self._best_below[row, low] / self._columns[row])
+
+    def _nearest_row(self, heads: Floats) -> Ints:
+        corners = self._corners(heads)
+        heaviest = np.argmax([weight for _, weight in corners], axis=0)
+        return np.asarray(np.choose(heaviest, [row for row, _ in corners]))
+
+    def unit_shares(self, heads: Floats, discharge: Floats) -> Floats:
+        """Discharge of each unit as a share of its full discharge.
+
+        heads : (lines, n) [m]
+        discharge : (n,) [m3/s]
+
+        Returns (units, n), units in the order of the groups; 0 for a unit that stands. The shares
+        are those of the nearest row and column of the table.
+        """
+        row = self._nearest_row(heads)
+        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
+        left = np.rint(np.minimum(share, 1.0) * self._columns[row]).astype(np.int64)
+        numbers = [n for n, group in enumerate(self.plant.groups) for _ in range(group.count)]
+        shares = np.zeros((len(numbers), discharge.size))
+        for unit in range(len(numbers) - 1, 0, -1):
+            own = self._unit_output(numbers[unit])
+            before = self._stages[unit - 1]
+            column = np.arange(own.shape[1])
+            rest = left[:, None] - column
+            usable = (rest >= 0) & (rest < before.shape[1])
+            value = own[row] + np.where(
+                usable, before[row[:, None], np.clip(rest, 0, before.shape[1] - 1)], -np.inf
+            )
+            taken = value.argmax(axis=1)
+            shares[unit] = taken / self._unit_steps[numbers[unit], row]
+            left = left - taken
+        shares[0] = left / self._unit_steps[numbers[0], row]
+        return shares
+
+
+def _apart(heads: list[float]) -> Floats:
+    """Sorted heads without those that coincide with the one before."""
+    nodes = np.unique(heads)
+    return nodes[np.concatenate([[True], np.diff(nodes) > 1e-9 * nodes[-1]])]
+
+
+def max_plus(first: Floats, second: Floats) -> Floats:
+    """Row by row the largest first(i) + second(k - i) for each k.
+
+    first : (rows, a)
+    second : (rows, b)
+
+    Returns (rows, a + b - 1).
+    """
+    if first.shape[1] > second.shape[1]:
+        first, second = second, first
+    total = np.full((first.shape[0], first.shape[1] + second.shape[1] - 1), -np.inf)
+    reach = second.shape[1]
+    for step in np.flatnonzero(np.isfinite(first).any(axis=0)):
+        window = total[:, step : step + reach]
+        np.maximum(window, first[:, step, None] + second, out=window)
+    return total

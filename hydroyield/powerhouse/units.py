@@ -1,0 +1,162 @@
+"""Turbine-generator units: full discharge, efficiency, output."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class EfficiencyCurve:
+    """Turbine efficiency against the share of full discharge at the head of the moment.
+
+    shares : rising, 0 to 1
+    efficiencies : at the shares
+
+    Between the points a monotone piecewise cubic (PCHIP; Fritsch & Butland 1984, SIAM J. Sci.
+    Stat. Comput. 5: 300-304); outside them constant.
+    """
+
+    shares: tuple[float, ...]
+    efficiencies: tuple[float, ...]
+
+    @cached_property
+    def _interpolant(self) -> Any:
+        from scipy.interpolate import PchipInterpolator
+
+        return PchipInterpolator(self.shares, self.efficiencies)
+
+    def __call__(self, share: Floats) -> Floats:
+        inside = np.clip(share, self.shares[0], self.shares[-1])
+        return np.asarray(self._interpolant(inside), dtype=np.float64)
+
+    @property
+    def best(self) -> float:
+        return max(self.efficiencies)
+
+
+def rising_part(x: Floats, y: Floats) -> tuple[Floats, Floats]:
+    """The points at which y is larger than at any x before."""
+    before = np.concatenate([[-np.inf], np.maximum.accumulate(y)[:-1]])
+    return x[y > before], y[y > before]
+
+
+@dataclass(frozen=True)
+class UnitGroup:
+    """Equal units.
+
+    count : number of units
+    type : kaplan, francis, ...
+    rated_discharge : of one unit, full opening at rated head [m3/s]
+    rated_head : net [m]
+    unit_capacity : of one unit, at the generator terminals [W]
+    minimum_share : least discharge as a share of full discharge
+    curve : efficiency of the turbine
+    axis_level : where the head of an impulse machine ends [m]; None for the tailwater
+    """
+
+    count: int
+    type: str
+    rated_discharge: float
+    rated_head: float
+    unit_capacity: float
+    minimum_share: float
+    curve: EfficiencyCurve
+    axis_level: float | None = None
+
+    @property
+    def head_exponent(self) -> float:
+        """Full discharge grows with this power of the net head.
+
+        One half is exact for nozzles and usual for other turbines; the discharge of a screw does
+        not depend on the head.
+        """
+        return 0.0 if self.type == "screw" else 0.5
+
+    @cached_property
+    def _relative_output(self) -> tuple[Floats, Floats]:
+        """Shares of full discharge, and share x efficiency at them as far as it rises."""
+        share = np.linspace(self.minimum_share, 1, 2001)
+        return rising_part(share, share * self.curve(share))
+
+    @property
+    def best_relative_output(self) -> float:
+        """Largest share x efficiency."""
+        return float(self._relative_output[1][-1])
+
+    def share_giving(self, relative_output: Floats) -> Floats:
+        """Least share of full discharge with this share x efficiency; inf where it is not reached."""
+        share, relative = self._relative_output
+        return np.interp(relative_output, relative, share, right=np.inf)
+
+    def full_discharge(self, net_head: Floats) -> Floats:
+        """Discharge of one fully open unit [m3/s] at `net_head` [m]; 0 without head."""
+        if self.head_exponent == 0:
+            return np.where(net_head > 0, self.rated_discharge, 0.0)
+        return self.rated_discharge * np.sqrt(np.maximum(0.0, net_head) / self.rated_head)
+
+
+@dataclass(frozen=True)
+class Electrical:
+    """From the turbine shaft to the grid.
+
+    drive, generator, transformer : efficiencies, 0 to 1
+    own_use : taken while any unit runs [W]
+    export_limit : after all losses [W]; None without one
+    """
+
+    drive: float = 1.0
+    generator: float = 1.0
+    transformer: float = 1.0
+    own_use: float = 0.0
+    export_limit: float | None = None
+
+    @property
+    def at_terminals(self) -> float:
+        """Efficiency from the turbine shaft to the generator terminals."""
+        return self.drive * self.generator
+
+
+@dataclass(frozen=True)
+class Plant:
+    """The machines of a site.
+
+    groups : groups of equal units
+    electrical : common to all units
+    density : of water [kg/m3]
+    gravity : [m/s2]
+    minimum_net_head : a state with less is not run [m]
+    shutdown_above : river discharge that stops the plant [m3/s]; None without one
+    """
+
+    groups: tuple[UnitGroup, ...]
+    electrical: Electrical
+    density: float
+    gravity: float
+    minimum_net_head: float = 0.0
+    shutdown_above: float | None = None
+
+    @property
+    def specific_weight(self) -> float:
+        """Density times gravity [N/m3]."""
+        return self.density * self.gravity
+
+    @property
+    def terminal_weight(self) -> float:
+        """Specific weight times drive and generator efficiency [N/m3]."""
+        return self.specific_weight * self.electrical.at_terminals
+
+    @property
+    def installed_capacity(self) -> float:
+        """Sum of the unit capacities [W]."""
+        return sum(group.count * group.unit_capacity for group in self.groups)
+
+    @property
+    def unit_count(self) -> int:
+        return sum(group.count for group in self.groups)
