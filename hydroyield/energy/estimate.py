@@ -1,0 +1,242 @@
+"""Annual energy of a scheme: cells x power, with years and months kept apart."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.energy.ledger import ledger, reference_head
+from hydroyield.energy.scheme import Scheme
+from hydroyield.errors import ComputationError
+from hydroyield.powerhouse import Operation
+from hydroyield.quantities import W_PER_KW, WH_PER_MWH
+from hydroyield.river import (
+    Calendar,
+    Cells,
+    characteristic_discharge,
+    condense,
+    exceedance_percent,
+    quantile,
+    usable_years,
+)
+from hydroyield.river.years import count_months
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+Floats = NDArray[np.float64]
+
+EXCEEDANCES = (1, 5, 10, 20, 30, 40, 50, 60, 70, 80, 90, 95, 99)  # %
+CHARACTERISTIC_DAYS = (10, 30, 90, 180, 270, 355)
+CURVE_STEPS = 400  # rows of a curve, less one
+
+
+@dataclass(frozen=True)
+class Estimate:
+    """Annual energy of a scheme and what it rests on.
+
+    scheme : what was computed
+    cells : states of the river over the years used
+    operation : how the plant runs in each cell
+    net_power : (c,) delivered in each cell [W]
+    energy_by_month : (y, 12) of each year used, January first [Wh]
+    years_left_out : {name of the year: reason}
+    """
+
+    scheme: Scheme
+    cells: Cells
+    operation: Operation
+    net_power: Floats
+    energy_by_month: Floats
+    years_left_out: dict[str, str]
+
+    # --- headline -------------------------------------------------------------------------------
+
+    @property
+    def mean_annual_energy_mwh(self) -> float:
+        """Net energy, mean over the years used [MWh]."""
+        return float(self.energy_by_month.sum(axis=1).mean() / WH_PER_MWH)
+
+    @property
+    def installed_capacity_kw(self) -> float:
+        """Sum of the unit capacities [kW]."""
+        return self.scheme.plant.installed_capacity / W_PER_KW
+
+    @property
+    def capacity_factor(self) -> float:
+        """Net energy over installed capacity times hours, for the years used."""
+        full = self.scheme.plant.installed_capacity * float(self.cells.hours.sum())
+        return float(self.energy_by_month.sum() / full)
+
+    @property
+    def maximum_net_power_kw(self) -> float:
+        """The most that the plant delivers at any river discharge [kW]."""
+        best = int(self.net_power.argmax())
+        season = self.cells.season[best]
+        wide = max(self.cells.discharge.max(), 3 * self._fully_open_discharge())
+        around = self.cells.discharge[best] * np.linspace(0.8, 1.25, 200)
+        tried = np.concatenate([around, np.geomspace(wide / 1000, wide, 200)])
+        run = self.scheme.operate(tried, np.full(tried.size, season))
+        return float(max(self.net_power.max(), self.scheme.net_power(run.output).max()) / W_PER_KW)
+
+    def _fully_open_discharge(self) -> float:
+        groups = self.scheme.plant.groups
+        return sum(group.count * group.rated_discharge for group in groups)
+
+    # --- by year and month ----------------------------------------------------------------------
+
+    @property
+    def monthly_energy_mwh(self) -> list[float]:
+        """Mean energy of each calendar month, January first [MWh]."""
+        return [float(mean) for mean in self.energy_by_month.mean(axis=0) / WH_PER_MWH]
+
+    @property
+    def yearly_energy_mwh(self) -> dict[str, float]:
+        """Energy of each year used, by the calendar year in which it ends [MWh]."""
+        totals = self.energy_by_month.sum(axis=1) / WH_PER_MWH
+        return {str(year): float(total) for year, total in zip(self.cells.years, totals, strict=True)}
+
+    @property
+    def years_used(self) -> list[str]:
+        return [str(year) for year in self.cells.years]
+
+    # --- the river ------------------------------------------------------------------------------
+
+    @property
+    def exceedance_discharge_m3s(self) -> dict[str, float]:
+        """Discharge equalled or exceeded in so many per cent of the time, all valid days [m3/s]."""
+        values = quantile(self.scheme.valid_discharge, EXCEEDANCES)
+        return {str(p): float(q) for p, q in zip(EXCEEDANCES, values, strict=True)}
+
+    @property
+    def characteristic_discharge_m3s(self) -> dict[str, float]:
+        """Discharge equalled or exceeded on so many days of a year, all valid days [m3/s]."""
+        values = characteristic_discharge(self.scheme.valid_discharge, CHARACTERISTIC_DAYS)
+        return {str(d): float(q) for d, q in zip(CHARACTERISTIC_DAYS, values, strict=True)}
+
+    @property
+    def environmental_flow_mean_m3s(self) -> float:
+        """What the river keeps, counted abstractions included: mean of the days used [m3/s]."""
+        kept = self.scheme.rules.reserved_for_river(self.cells.discharge, self.cells.season)
+        return float(kept[self.cells.cell_of_day].mean())
+
+    # --- cross-checks and tables ----------------------------------------------------------------
+
+    @property
+    def ledger_mwh(self) -> list[tuple[str, float]]:
+        """(step, mean annual energy [MWh]) from the energy of all the water to the net."""
+        return ledger(self.scheme, self.cells, self.operation)
+
+    @property
+    def reference_head_m(self) -> float:
+        """Head by which the ledger values water [m]."""
+        return reference_head(self.scheme)
+
+    def power_duration(self) -> pd.DataFrame:
+        """Power duration curve of the years used: `exceedance_percent`, `power_kw`.
+
+        A staircase: each power stands at both ends of its share of the time, so that the area
+        under straight lines is exact.
+        """
+        import pandas as pd
+
+        power, where = np.unique(-self.net_power, return_inverse=True)
+        hours = np.bincount(where, self.cells.weight)
+        ends = 100 * np.concatenate([[0.0], np.cumsum(hours) / hours.sum()])
+        exceedance = np.repeat(ends, 2)[1:-1]
+        return pd.DataFrame(
+            {"exceedance_percent": exceedance, "power_kw": np.repeat(-power, 2) / W_PER_KW}
+        )
+
+    @property
+    def duration_integral_energy_mwh(self) -> float:
+        """The annual energy again, as the area under the power duration curve [MWh]."""
+        curve = self.power_duration().to_numpy()
+        exceedance, power = curve.T
+        mean = float((np.diff(exceedance) * (power[1:] + power[:-1])).sum() / 200)
+        return mean * W_PER_KW * self.cells.hours_per_year / WH_PER_MWH
+
+    def curves(self) -> pd.DataFrame:
+        """The plant against the river's discharge, falling.
+
+        Columns `month` (0: mean of the months, weighted by their days; 1 to 12 where rules differ
+        by month), `exceedance_percent`, `river_discharge_m3s`, `offered_discharge_m3s`,
+        `turbine_discharge_m3s`, `gross_head_m`, `net_head_m`, `power_kw`. Exceedance is that of
+        all valid days, in every month.
+        """
+        import pandas as pd
+
+        river = self._curve_discharges()
+        seasons = np.arange(self.scheme.rules.season_count)
+        run = self.scheme.operate(np.tile(river, seasons.size), np.repeat(seasons, river.size))
+        columns = {
+            "offered_discharge_m3s": run.offered,
+            "turbine_discharge_m3s": run.turbined,
+            "gross_head_m": run.gross_head,
+            "net_head_m": run.net_head,
+            "power_kw": self.scheme.net_power(run.output) / W_PER_KW,
+        }
+        by_season = {name: values.reshape(-1, river.size) for name, values in columns.items()}
+        season_of_month = self.scheme.rules.season_of_month
+        month_hours = self.cells.hours.mean(axis=0)
+        weight = np.bincount(season_of_month, month_hours) / month_hours.sum()
+        mean = {name: (weight[:, None] * values).sum(axis=0) for name, values in by_season.items()}
+        parts = [(0, mean)]
+        if seasons.size > 1:
+            parts += [
+                (month, {name: values[season] for name, values in by_season.items()})
+                for month, season in enumerate(season_of_month, start=1)
+            ]
+        exceedance = np.asarray(exceedance_percent(self.scheme.valid_discharge))
+        order = np.argsort(self.scheme.valid_discharge)
+        exceeded = np.interp(
+            river, self.scheme.valid_discharge[order], exceedance[order]
+        )
+        frames = [
+            pd.DataFrame(
+                {
+                    "month": month,
+                    "exceedance_percent": exceeded,
+                    "river_discharge_m3s": river,
+                    **values,
+                }
+            )
+            for month, values in parts
+        ]
+        return pd.concat(frames, ignore_index=True)
+
+    def _curve_discharges(self) -> Floats:
+        """(r,) distinct river discharges at even steps of exceedance, falling [m3/s]."""
+        steps = np.linspace(0, 100, CURVE_STEPS + 1)
+        return np.unique(quantile(self.scheme.valid_discharge, steps))[::-1]
+
+
+def estimate_energy(scheme: Scheme) -> Estimate:
+    """Run a scheme over its record.
+
+    Raises ComputationError where no hydrological year can be used; the message says which months
+    are short of values.
+    """
+    calendar = Calendar.of(scheme.dates, scheme.year_start_month)
+    months = count_months(calendar, ~np.isnan(scheme.discharge))
+    used, left_out = usable_years(months, scheme.minimum_month_coverage, scheme.year_start_month)
+    if not used.any():
+        raise NoUsableYearError(left_out)
+    cells = condense(scheme.discharge, calendar, months, used, scheme.rules.season_of_month)
+    operation = scheme.operate(cells.discharge, cells.season)
+    power = scheme.net_power(operation.output)
+    return Estimate(scheme, cells, operation, power, cells.by_month(power), left_out)
+
+
+class NoUsableYearError(ComputationError):
+    """No hydrological year has enough days with a value in every month.
+
+    reasons : {name of the year: what it lacks}
+    """
+
+    def __init__(self, reasons: dict[str, str]) -> None:
+        self.reasons = reasons
+        super().__init__("no hydrological year of the record can be used")

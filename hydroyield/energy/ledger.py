@@ -1,0 +1,91 @@
+"""The way from the energy of all the water to the energy delivered, step by step."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.energy.scheme import Scheme
+from hydroyield.hydraulics import Weir
+from hydroyield.powerhouse import Operation
+from hydroyield.quantities import WH_PER_MWH
+from hydroyield.river import Cells, quantile
+
+Floats = NDArray[np.float64]
+
+STEPS = (
+    "gross",
+    "reserved",
+    "shutdown",
+    "no_admissible_head",
+    "above_full_discharge",
+    "capacity_limit",
+    "below_minimum_or_unused",
+    "outage",
+    "levels",
+    "waterway",
+    "turbine",
+    "drive_and_generator",
+    "transformer",
+    "own_use",
+    "export_limit",
+    "net",
+)
+
+
+def reference_head(scheme: Scheme) -> float:
+    """Headwater less tailwater at the median discharge [m], the plant and abstractions apart.
+
+    Over a weir the crest is the headwater.
+    """
+    median = quantile(scheme.valid_discharge, [50.0])
+    state = scheme.heads.at(median, np.zeros(1), np.zeros(1))
+    headwater = scheme.heads.headwater
+    upper = headwater.crest if isinstance(headwater, Weir) else float(state.headwater(np.zeros(1))[0])
+    return upper - float(state.tailwater(np.zeros(1))[0])
+
+
+def ledger(scheme: Scheme, cells: Cells, operation: Operation) -> list[tuple[str, float]]:
+    """Rows (step, mean annual energy [MWh]): gross positive, losses negative, net their sum."""
+    rows: dict[str, float] = {}
+    for step, power in _rates(scheme, cells, operation):
+        rows[step] = rows.get(step, 0.0) + cells.per_year(power) / WH_PER_MWH
+    rows = {step: rows.get(step, 0.0) for step in STEPS[:-1]}
+    return [*rows.items(), ("net", sum(rows.values()))]
+
+
+def _rates(scheme: Scheme, cells: Cells, run: Operation) -> Iterator[tuple[str, Floats]]:
+    """Each step as a rate by cell [W]."""
+    weight = scheme.plant.specific_weight
+    of_water = weight * reference_head(scheme)
+    yield "gross", of_water * cells.discharge
+    yield "reserved", -of_water * (cells.discharge - run.offered)
+    for step, water in _unused_water(run):
+        yield step, -of_water * water
+    yield "levels", weight * run.turbined * run.gross_head - of_water * run.turbined
+    yield "waterway", -weight * run.turbined * (run.gross_head - run.net_head)
+    electrical = scheme.plant.electrical
+    shaft = run.output / electrical.at_terminals
+    yield "turbine", shaft - weight * run.turbined * run.net_head
+    yield "drive_and_generator", run.output - shaft
+    yield "transformer", -run.output * (1 - electrical.transformer)
+    exported = run.output * electrical.transformer
+    own_use = np.minimum(exported, electrical.own_use * (run.output > 0))
+    yield "own_use", -own_use
+    yield "export_limit", scheme.net_power(run.output) - (exported - own_use)
+
+
+def _unused_water(run: Operation) -> Iterator[tuple[str, Floats]]:
+    """Offered water that is not turbined, each part under one heading [m3/s]."""
+    unused = run.offered - run.turbined
+    standing = run.stopped | run.no_head
+    above = np.where(standing, 0.0, np.maximum(0.0, run.offered - run.fully_open))
+    above = np.minimum(above, unused)
+    rest = np.where(standing, 0.0, unused - above)
+    yield "shutdown", np.where(run.stopped, unused, 0.0)
+    yield "no_admissible_head", np.where(run.no_head & ~run.stopped, unused, 0.0)
+    yield "above_full_discharge", above
+    yield "capacity_limit", np.where(run.at_capacity, rest, 0.0)
+    yield "below_minimum_or_unused", np.where(run.at_capacity, 0.0, rest)

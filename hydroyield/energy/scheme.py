@@ -1,0 +1,85 @@
+"""A described site in numbers: its river, its rules, its levels and its plant."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.hydraulics import Heads, HeadState
+from hydroyield.powerhouse import Dispatcher, HeadLines, Operation, Plant, operate
+from hydroyield.river import WaterRules, quantile
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+
+@dataclass(frozen=True)
+class Scheme:
+    """All that energy depends on.
+
+    dates : (n,) every day of the record, datetime64[D]
+    discharge : (n,) river discharge at the site, nan where missing [m3/s]
+    rules : what stays in the river or is taken by others
+    heads : levels and losses
+    plant : the machines
+    year_start_month : first month of the hydrological year
+    minimum_month_coverage : share of the days of a month that need a value
+    """
+
+    dates: NDArray[np.datetime64]
+    discharge: Floats
+    rules: WaterRules
+    heads: Heads
+    plant: Plant
+    year_start_month: int = 10
+    minimum_month_coverage: float = 0.9
+
+    @cached_property
+    def valid_discharge(self) -> Floats:
+        """Discharge of the days with a value [m3/s]."""
+        return self.discharge[~np.isnan(self.discharge)]
+
+    def head_state(self, discharge: Floats, season: Ints) -> HeadState:
+        """Levels at states of the river, both (n,)."""
+        return self.heads.at(
+            discharge, self.rules.abstracted[season], self.rules.unreturned[season]
+        )
+
+    @cached_property
+    def dispatcher(self) -> Dispatcher:
+        """The plant with its tables, laid for the heads that occur on the record."""
+        season = np.arange(self.rules.season_count)
+        reach = np.concatenate(
+            [
+                np.linspace(0, self.valid_discharge.max(), 200),
+                quantile(self.valid_discharge, np.linspace(0, 100, 400)),
+            ]
+        )
+        river, season = np.tile(reach, season.size), np.repeat(season, reach.size)
+        state = self.head_state(river, season)
+        standing = np.zeros(state.size)
+        fully_open = sum(group.count * group.rated_discharge for group in self.plant.groups)
+        running = np.minimum(self.rules.offered(river, season), fully_open)
+        lines = HeadLines.of(self.plant.groups)
+        seen = [
+            np.concatenate([state.net(turbined, end) for turbined in (standing, running)])
+            for end in lines.lower_ends
+        ]
+        return Dispatcher(self.plant, np.maximum(0.0, np.stack(seen)))
+
+    def operate(self, discharge: Floats, season: Ints) -> Operation:
+        """How the plant runs at river discharges [m3/s] and seasons, both (n,)."""
+        limit = self.plant.shutdown_above
+        stopped = np.zeros(discharge.shape, bool) if limit is None else discharge > limit
+        offered = self.rules.offered(discharge, season)
+        return operate(self.dispatcher, self.head_state(discharge, season), offered, stopped)
+
+    def net_power(self, output: Floats) -> Floats:
+        """Power delivered after transformer, own use and export limit [W]."""
+        electrical = self.plant.electrical
+        after_own_use = output * electrical.transformer - electrical.own_use * (output > 0)
+        limit = np.inf if electrical.export_limit is None else electrical.export_limit
+        return np.minimum(np.maximum(0.0, after_own_use), limit)
