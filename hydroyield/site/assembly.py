@@ -1,0 +1,300 @@
+"""From a described site and its record to the scheme that is computed."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from hydroyield.energy.rating import (
+    RatedState,
+    RatingError,
+    Setting,
+    UnitSpecification,
+    rate_units,
+)
+from hydroyield.energy.scheme import Scheme
+from hydroyield.errors import SiteFileError
+from hydroyield.hydraulics import (
+    FixedLevel,
+    Heads,
+    LevelTable,
+    NormalDepth,
+    StageDischarge,
+    Weir,
+    density,
+    gravity,
+)
+from hydroyield.hydraulics.levels import Level
+from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY
+from hydroyield.powerhouse import EfficiencyCurve, Electrical, Plant, machine_types
+from hydroyield.record import Record, RecordOptions
+from hydroyield.river import Abstraction, InflowShare, WaterRules, quantile
+from hydroyield.site.head_models import Head, Headwater, Tailwater
+from hydroyield.site.models import Site, SiteFile
+from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
+from hydroyield.site.plant_models import TurbineGroup
+from hydroyield.site.reading import SiteDescription, read_site_file
+
+Floats = NDArray[np.float64]
+MONTHS_PER_YEAR = 12
+
+
+@dataclass(frozen=True)
+class Assembled:
+    """A scheme, and what had to be derived for it.
+
+    scheme : ready to be computed
+    rated_state : where rated values were derived
+    """
+
+    scheme: Scheme
+    rated_state: RatedState
+
+
+def read_site(path: str | Path) -> SiteDescription:
+    """Read a site file and hold its blocks against each other.
+
+    Raises SiteFileError with every fault found: first those of shape, and where there are none
+    those of physics that show without the record.
+    """
+    site = read_site_file(path)
+    model = site.model
+    specific_weight = site_density(model.site) * site_gravity(model.site)
+    faults = dry_head_faults(site, levels(model), WIDE_RANGE)
+    for number, group in enumerate(model.turbines):
+        faults += capacity_fault(
+            site, number, group.unit_capacity, group.rated_discharge, group.rated_head,
+            specific_weight,
+        )  # fmt: skip
+    if faults:
+        raise SiteFileError(sorted(faults, key=lambda fault: fault.line or 0))
+    return site
+
+
+def record_options(site: SiteDescription) -> RecordOptions:
+    """What the site file says about its record."""
+    record = site.model.discharge.record
+    transfer = site.model.discharge.transfer
+    return RecordOptions(
+        unit=record.unit,
+        date_column=record.date_column,
+        value_column=record.value_column,
+        missing=record.missing,
+        date_order=record.date_order,
+        decimal_mark=record.decimal_mark,
+        gauge_area_m2=transfer.gauge_area if transfer else None,
+    )
+
+
+def transfer_factor(model: SiteFile) -> float:
+    """Factor from discharge at the gauge to discharge at the site: (area ratio) ^ exponent."""
+    transfer = model.discharge.transfer
+    if transfer is None:
+        return 1.0
+    return float((transfer.site_area / transfer.gauge_area) ** transfer.exponent)
+
+
+def assemble(site: SiteDescription, record: Record) -> Assembled:
+    """Build the scheme.
+
+    Raises SiteFileError with the faults that show only with the record: no head at any of its
+    discharges, a rated value that cannot be derived, a capacity above what the water holds.
+    """
+    model = site.model
+    discharge = record.discharge * transfer_factor(model)
+    valid = discharge[~np.isnan(discharge)]
+    rules, heads = water_rules(model, valid), levels(model)
+    faults = dry_head_faults(site, heads, np.linspace(0, valid.max(), 400))
+    if faults:
+        raise SiteFileError(faults)
+    plant, state = _plant(site, rules, heads, float(valid.max()))
+    scheme = Scheme(
+        dates=record.dates,
+        discharge=discharge,
+        rules=rules,
+        heads=heads,
+        plant=plant,
+        year_start_month=model.discharge.year_start_month,
+        minimum_month_coverage=model.discharge.minimum_month_coverage,
+    )
+    return Assembled(scheme, state)
+
+
+# --- the river ----------------------------------------------------------------------------------
+
+
+def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
+    """The rules of a site in numbers; statistics are those of all valid days at the site."""
+    fixed: list[list[float]] = []
+    shares: list[InflowShare] = []
+    for rule in model.environmental_flow:
+        if rule.rule == "inflow_share":
+            shares.append(InflowShare(rule.share, rule.above))
+        elif rule.rule == "monthly":
+            fixed.append(list(rule.discharge))
+        elif rule.rule == "constant":
+            fixed.append([rule.discharge] * MONTHS_PER_YEAR)
+        elif rule.rule == "exceedance":
+            statistic = float(quantile(valid_discharge, rule.percent))
+            fixed.append([statistic] * MONTHS_PER_YEAR)
+        else:
+            fixed.append([rule.share * float(valid_discharge.mean())] * MONTHS_PER_YEAR)
+    return WaterRules.by_month(fixed, shares, abstractions(model))
+
+
+def abstractions(model: SiteFile) -> list[Abstraction]:
+    """Other water that does not reach the turbines."""
+    return [
+        Abstraction(
+            taken.name,
+            taken.discharge,
+            taken.months or tuple(range(1, MONTHS_PER_YEAR + 1)),
+            taken.counts_as_environmental_flow,
+            taken.returns,
+        )
+        for taken in model.abstractions
+    ]
+
+
+# --- levels and losses --------------------------------------------------------------------------
+
+
+def levels(model: SiteFile) -> Heads:
+    """Headwater, tailwater and losses."""
+    head: Head = model.head
+    return Heads(
+        headwater=_headwater(head.headwater),
+        tailwater=_tailwater(head.tailwater),
+        follows_turbine=head.tailwater.follows == "turbine",
+        loss_coefficient=sum(loss.loss_coefficient for loss in model.waterway),
+    )
+
+
+def _table(pairs: tuple[tuple[float, float], ...]) -> LevelTable:
+    discharges, heights = zip(*pairs, strict=True)
+    return LevelTable(tuple(discharges), tuple(heights))
+
+
+def _headwater(form: Headwater) -> Level:
+    if form.weir is not None:
+        return Weir(form.weir.crest, form.weir.length, form.weir.coefficient)
+    if form.table is not None:
+        return _table(form.table)
+    assert form.level is not None  # exactly one of them is given
+    return FixedLevel(form.level)
+
+
+def _tailwater(form: Tailwater) -> Level:
+    if form.rating is not None:
+        return StageDischarge(form.rating.zero_level, form.rating.coefficient, form.rating.exponent)
+    if form.channel is not None:
+        channel = form.channel
+        return NormalDepth(
+            channel.bed_level,
+            channel.bottom_width,
+            channel.side_slope,
+            channel.slope,
+            channel.manning_n,
+        )
+    if form.table is not None:
+        return _table(form.table)
+    assert form.level is not None  # exactly one of them is given
+    return FixedLevel(form.level)
+
+
+# --- the plant ----------------------------------------------------------------------------------
+
+
+def site_gravity(site: Site) -> float:
+    """Gravity at the site [m/s2]; 9.81 where no latitude is given."""
+    if site.latitude is None:
+        return STANDARD_GRAVITY
+    return gravity(site.latitude, site.altitude or 0.0)
+
+
+def site_density(site: Site) -> float:
+    """Density of the water [kg/m3]; 1000 where no temperature is given."""
+    if site.water_temperature is None:
+        return STANDARD_DENSITY
+    return density(site.water_temperature)
+
+
+def electrical(model: SiteFile) -> Electrical:
+    """From shaft to grid; what is left out loses nothing."""
+    given = model.electrical
+
+    def or_one(efficiency: float | None) -> float:
+        return 1.0 if efficiency is None else efficiency
+
+    return Electrical(
+        drive=or_one(given.drive_efficiency),
+        generator=or_one(given.generator_efficiency),
+        transformer=or_one(given.transformer_efficiency),
+        own_use=given.own_use or 0.0,
+        export_limit=given.export_limit,
+    )
+
+
+def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve:
+    """The curve given, or the typical one of the type."""
+    points = group.efficiency
+    if points is None or isinstance(points, str):
+        points = machine_types()[group.type].curve
+    shares, efficiencies = zip(*points, strict=True)
+    return EfficiencyCurve(tuple(shares), tuple(efficiencies))
+
+
+def minimum_share(group: TurbineGroup) -> float:
+    """The minimum discharge given, or that of the type, as a share of full discharge."""
+    if group.minimum_discharge is None:
+        return machine_types()[group.type].minimum_discharge
+    return group.minimum_discharge
+
+
+def _plant(
+    site: SiteDescription, rules: WaterRules, heads: Heads, highest_discharge: float
+) -> tuple[Plant, RatedState]:
+    model = site.model
+    chain = electrical(model)
+    water, fall = site_density(model.site), site_gravity(model.site)
+    units = [
+        UnitSpecification(
+            group.count,
+            group.type,
+            group.rated_discharge,
+            group.rated_head,
+            group.unit_capacity,
+            minimum_share(group),
+            efficiency_curve(group),
+            group.axis_level,
+        )
+        for group in model.turbines
+    ]
+    setting = Setting(rules, heads, highest_discharge, water * fall * chain.at_terminals)
+    try:
+        groups, state = rate_units(units, setting)
+    except RatingError as error:
+        key = "rated_head" if units[error.group].unit_capacity is None else "unit_capacity"
+        path = ("turbines", error.group, key)
+        raise SiteFileError([site.fault(path, str(error))]) from None
+    faults = [
+        fault
+        for number, group in enumerate(groups)
+        for fault in capacity_fault(
+            site, number, group.unit_capacity, group.rated_discharge, group.rated_head,
+            water * fall,
+        )
+    ]  # fmt: skip
+    if faults:
+        raise SiteFileError(faults)
+    return Plant(
+        groups=groups,
+        electrical=chain,
+        density=water,
+        gravity=fall,
+        minimum_net_head=model.head.minimum_net_head or 0.0,
+        shutdown_above=model.operation.shutdown_above,
+    ), state
