@@ -1,0 +1,180 @@
+"""The plausibility audit: every check of a result, in the order in which water becomes energy."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from hydroyield.checks import Check
+from hydroyield.energy import Estimate
+from hydroyield.evidence.machines import machine_checks
+from hydroyield.hydraulics import LevelTable, Weir
+from hydroyield.record import Receipt
+from hydroyield.site.assembly import Assembled
+from hydroyield.site.notes import left_out, without_source
+from hydroyield.site.reading import SiteDescription
+
+FEWEST_YEARS = 10  # common practice: fewer years do not show the spread of wet and dry
+TRUSTED_AREA_RATIO = (0.5, 1.5)  # USGS SIR 2008-5126, for gauges on the same stream
+USUAL_CAPACITY_FACTOR = (0.2, 0.85)  # run-of-river plants, common practice
+LARGEST_SHARE_OUTSIDE = 0.02  # of the days beyond a surveyed level
+
+
+def audit(
+    site: SiteDescription, receipt: Receipt, assembled: Assembled, estimate: Estimate
+) -> tuple[Check, ...]:
+    """Hold a result and its input against what is usual."""
+    return (
+        *receipt.checks,
+        _years(estimate),
+        *_transfer(site),
+        *_levels(estimate),
+        *_left_out(site),
+        *machine_checks(site, assembled, estimate),
+        _energy(estimate),
+        _capacity_factor(estimate),
+        _cross_check(estimate),
+        _sources(site),
+    )
+
+
+def warn_unless(
+    name: str, good: bool, value: float | None, limit: float | None, fine: str, bad: str
+) -> Check:
+    """A check that passes with one sentence and warns with another."""
+    return Check(name, "pass" if good else "warn", value, limit, fine if good else bad)
+
+
+def _years(estimate: Estimate) -> Check:
+    used, out = len(estimate.years_used), len(estimate.years_left_out)
+    rest = f", {out} left out" if out else ""
+    return warn_unless(
+        "years_used",
+        used >= FEWEST_YEARS,
+        used,
+        FEWEST_YEARS,
+        f"{used} hydrological years used{rest}.",
+        f"Only {used} hydrological years used{rest}; a run of wet or dry years can hide in so few "
+        "(common practice asks for 10). Lengthen the record if a longer one exists nearby.",
+    )
+
+
+def _transfer(site: SiteDescription) -> Iterator[Check]:
+    transfer = site.model.discharge.transfer
+    if transfer is None:
+        return
+    ratio = transfer.site_area / transfer.gauge_area
+    low, high = TRUSTED_AREA_RATIO
+    yield warn_unless(
+        "area_ratio",
+        low <= ratio <= high,
+        ratio,
+        low if ratio < low else high,
+        f"The site drains {ratio:.2f} times the area of the gauge.",
+        f"The site drains {ratio:.2f} times the area of the gauge; the method is trusted from "
+        f"{low:g} to {high:g} on the same stream (USGS SIR 2008-5126). Gauge the site for a season.",
+    )
+
+
+def _levels(estimate: Estimate) -> Iterator[Check]:
+    scheme, cells, run = estimate.scheme, estimate.cells, estimate.operation
+    rules = scheme.rules
+    below = cells.discharge - rules.unreturned[cells.season]
+    followed = run.turbined if scheme.heads.follows_turbine else below
+    for side, level, seen in (
+        ("headwater", scheme.heads.headwater, cells.discharge),
+        ("tailwater", scheme.heads.tailwater, followed),
+    ):
+        if not isinstance(level, LevelTable):
+            continue
+        outside = (seen > level.discharges[-1]) | (seen < level.discharges[0])
+        share = cells.mean(outside.astype(np.float64))
+        yield warn_unless(
+            f"{side}_table_range",
+            share <= LARGEST_SHARE_OUTSIDE,
+            share,
+            LARGEST_SHARE_OUTSIDE,
+            f"The {side} table covers {1 - share:.1%} of the time.",
+            f"The {side} table covers {level.discharges[0]:g} to {level.discharges[-1]:g} m3/s, "
+            f"and {share:.1%} of the time lies outside, where the first level is held and the "
+            "last segment extended. Survey levels at more discharges.",
+        )
+    if isinstance(scheme.heads.headwater, Weir):
+        yield Check(
+            "headwater_weir", "pass", None, None,
+            "The headwater follows the discharge over a free weir, approach velocity neglected.",
+        )  # fmt: skip
+
+
+_EFFECT_OF_LEAVING_OUT = {
+    "environmental_flow": "nearly every permit asks for one; state it",
+    "discharge.transfer": "state the catchment areas unless the gauge stands at the site",
+    "waterway": "racks, canals and pipes always lose some head; state a loss",
+    "electrical.drive_efficiency": "state it unless the turbine drives the generator directly",
+    "electrical.generator_efficiency": "no generator is free of loss; state it",
+    "electrical.transformer_efficiency": "state it unless the energy is metered before it",
+    "electrical.own_use": "state it if it is metered with the energy",
+    "outages": "plants stand now and then; the energy of a real plant is lower by a few per cent",
+}
+
+
+def _left_out(site: SiteDescription) -> Iterator[Check]:
+    for note in left_out(site):
+        name = f"left_out_{note.key.rpartition('.')[2]}"
+        effect = _EFFECT_OF_LEAVING_OUT.get(note.key)
+        what = f"Not stated: {note.key} ({note.text})"
+        yield Check(
+            name, "warn" if effect else "pass", None, None, f"{what}; {effect}." if effect else f"{what}."
+        )
+
+
+def _energy(estimate: Estimate) -> Check:
+    energy = estimate.mean_annual_energy_mwh
+    if energy > 0:
+        return Check("energy", "pass", energy, 0.0, "The plant delivers energy.")
+    return Check(
+        "energy", "fail", energy, 0.0,
+        "The plant delivers nothing in any year used; look at the ledger for where the water goes, "
+        "and at levels, minimum discharge and environmental flow.",
+    )  # fmt: skip
+
+
+def _capacity_factor(estimate: Estimate) -> Check:
+    factor = estimate.capacity_factor
+    low, high = USUAL_CAPACITY_FACTOR
+    return warn_unless(
+        "capacity_factor",
+        low <= factor <= high,
+        factor,
+        low if factor < low else high,
+        f"A capacity factor of {factor:.0%} is usual for run-of-river plants.",
+        f"A capacity factor of {factor:.0%} is unusual for a run-of-river plant ({low:.0%} to "
+        f"{high:.0%}, common practice); look at the size of the units against the river.",
+    )
+
+
+def _cross_check(estimate: Estimate) -> Check:
+    direct, integral = estimate.mean_annual_energy_mwh, estimate.duration_integral_energy_mwh
+    apart = abs(integral - direct) / direct if direct else abs(integral)
+    return warn_unless(
+        "duration_integral",
+        apart <= 1e-6,
+        apart,
+        1e-6,
+        "The area under the power duration curve gives the same annual energy.",
+        f"The area under the power duration curve differs by {apart:.2g}; please report this.",
+    )
+
+
+def _sources(site: SiteDescription) -> Check:
+    bare = without_source(site)
+    return warn_unless(
+        "sources",
+        not bare,
+        len(bare),
+        0,
+        "Every block of the site file says where its values come from.",
+        f"No source is stated for {', '.join(bare)}; these values count as assumptions. Add "
+        "`source:` to each block.",
+    )

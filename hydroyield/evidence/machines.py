@@ -1,0 +1,127 @@
+"""Checks of the machines: sizes, heads and efficiencies against what is usual for the type."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from hydroyield.checks import Check
+from hydroyield.energy import Estimate
+from hydroyield.powerhouse import UnitGroup, machine_types
+from hydroyield.powerhouse.types import SMALL_MACHINE
+from hydroyield.quantities import W_PER_KW
+from hydroyield.site.assembly import Assembled
+from hydroyield.site.reading import SiteDescription
+
+HEAD_BAND = (0.75, 1.15)  # of rated head, where a curve for one head still holds (common practice)
+LARGEST_SHARE_OUTSIDE = 0.1  # of the energy, made outside that band
+OVERSIZED_GENERATOR = 1.1  # of what the turbine gives at its rated point
+
+
+def machine_checks(
+    site: SiteDescription, assembled: Assembled, estimate: Estimate
+) -> Iterator[Check]:
+    """Checks of every turbine group, and of the rated state."""
+    for number, group in enumerate(estimate.scheme.plant.groups):
+        label = f"turbines[{number}] ({group.count} x {group.type})"
+        typical = site.model.turbines[number].efficiency in (None, "typical")
+        yield _generator(label, group, estimate)
+        yield from _against_type(label, group, typical)
+        yield _head_band(label, group, estimate)
+    yield _rated_state(assembled)
+
+
+def _check(name: str, good: bool, value: float, limit: float, fine: str, bad: str) -> Check:
+    return Check(name, "pass" if good else "warn", float(value), limit, fine if good else bad)
+
+
+def _generator(label: str, group: UnitGroup, estimate: Estimate) -> Check:
+    plant = estimate.scheme.plant
+    gives = plant.terminal_weight * group.rated_discharge * group.rated_head
+    gives *= group.best_relative_output
+    ratio = group.unit_capacity / gives
+    return _check(
+        "generator_size",
+        ratio <= OVERSIZED_GENERATOR,
+        ratio,
+        OVERSIZED_GENERATOR,
+        f"{label}: the capacity is {ratio:.2f} times what the turbine gives at its rated point.",
+        f"{label}: a capacity of {group.unit_capacity / W_PER_KW:.4g} kW is {ratio:.2f} times what "
+        f"the turbine gives at its rated point ({gives / W_PER_KW:.4g} kW); the capacity factor is "
+        "then low by choice. Compare rated head, rated discharge and unit capacity.",
+    )
+
+
+def _against_type(label: str, group: UnitGroup, typical: bool) -> Iterator[Check]:
+    kind = machine_types().get(group.type)
+    if kind is None:
+        return
+    low, high = kind.head_range
+    yield _check(
+        "head_of_type",
+        low <= group.rated_head <= high,
+        group.rated_head,
+        low if group.rated_head < low else high,
+        f"{label}: {group.rated_head:.3g} m is a usual head for the type.",
+        f"{label}: a rated head of {group.rated_head:.3g} m lies outside {low:g} to {high:g} m, "
+        f"the advisory range of the type ({kind.source}). Ask a maker, or compare other types.",
+    )
+    yield _check(
+        "efficiency_of_type",
+        group.curve.best <= kind.best_efficiency,
+        group.curve.best,
+        kind.best_efficiency,
+        f"{label}: a best efficiency of {group.curve.best:.3g} is within reach of the type.",
+        f"{label}: a best efficiency of {group.curve.best:.3g} is above {kind.best_efficiency:g}, "
+        f"the best of the type ({kind.source}). Ask for the maker's guarantee.",
+    )
+    if typical:
+        yield _check(
+            "typical_curve",
+            False,
+            group.unit_capacity / W_PER_KW,
+            SMALL_MACHINE / W_PER_KW,
+            "",
+            f"{label}: the efficiency curve is a typical one (common practice, within 0.02 to "
+            "0.03). "
+            + (
+                "Machines under about 100 kW reach 3 to 8 points less. "
+                if group.unit_capacity < SMALL_MACHINE
+                else ""
+            )
+            + "Replace it by the maker's guarantee.",
+        )
+
+
+def _head_band(label: str, group: UnitGroup, estimate: Estimate) -> Check:
+    """Share of the plant's energy made at heads for which the curve is not drawn."""
+    run = estimate.operation
+    low, high = (part * group.rated_head for part in HEAD_BAND)
+    outside = (run.net_head < low) | (run.net_head > high)
+    made = estimate.cells.per_year(estimate.net_power)
+    share = estimate.cells.per_year(estimate.net_power * outside) / made if made else 0.0
+    return _check(
+        "head_near_rated",
+        share <= LARGEST_SHARE_OUTSIDE,
+        share,
+        LARGEST_SHARE_OUTSIDE,
+        f"{label}: {share:.0%} of the energy is made outside {HEAD_BAND[0]:g} to {HEAD_BAND[1]:g} "
+        "of the rated head.",
+        f"{label}: {share:.0%} of the energy is made outside {HEAD_BAND[0]:g} to {HEAD_BAND[1]:g} "
+        "of the rated head, where a curve for one head is a guess (common practice). Ask the maker "
+        "for curves at several heads, or look at the rated head.",
+    )
+
+
+def _rated_state(assembled: Assembled) -> Check:
+    state = assembled.rated_state
+    return _check(
+        "rated_discharge_reached",
+        state.reached,
+        state.turbined,
+        state.river_discharge,
+        f"All units together can run at rated discharge ({state.turbined:.3g} m3/s) from a river "
+        f"discharge of {state.river_discharge:.3g} m3/s.",
+        f"The water offered never reaches the rated discharge of all units together "
+        f"({state.turbined:.3g} m3/s); the largest discharge of the record is "
+        f"{state.river_discharge:.3g} m3/s. Look at the unit of the record and the size of units.",
+    )
