@@ -1,0 +1,236 @@
+"""Makes the discharge records of the demo sites. The rivers are invented, and so is every value.
+
+    python demo_sites/make_records.py
+
+writes each record byte for byte as it lies in the repository. A further demo is one more `Demo`
+in `DEMOS`.
+
+The model is a shot-noise process through linear reservoirs, as in Weiss (1977), Water Resour.
+Res. 13(1): 101-108, cited from memory: wet days come in spells (a Markov chain of two states),
+the depth of rain on them is random, the soil holds part of it back and evaporates it, and the
+rest leaves through a quick store and two slow stores that keep the river going in dry weather.
+Weather that persists from month to month makes wet and dry years.
+"""
+
+from __future__ import annotations
+
+import datetime
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+HERE = Path(__file__).resolve().parent
+DAY = datetime.timedelta(days=1)
+SECONDS_PER_DAY = 86400.0
+WARM_UP_DAYS = 1461  # before the record starts, so that the stores forget how they began
+WEATHER_MEMORY = 0.55  # correlation of the weather of one month with that of the month before
+
+Floats = NDArray[np.float64]
+Monthly = tuple[float, ...]  # 12 values, January first
+
+
+@dataclass(frozen=True)
+class Climate:
+    """Rain and evaporation of a catchment, monthly values January first.
+
+    wet_share : share of days with rain
+    wet_spell : 0, wet days are independent, to 1, rain never stops
+    depth : mean rain of a wet day [mm]
+    depth_shape : 1, depths are exponential; above 1, more of the rain comes in few large events
+    evaporation : from moist soil [mm/d]
+    spread : standard deviation of the logarithm of a month's weather
+    """
+
+    wet_share: Monthly
+    wet_spell: float
+    depth: Monthly
+    depth_shape: float
+    evaporation: Monthly
+    spread: float
+
+
+@dataclass(frozen=True)
+class Catchment:
+    """How a catchment turns rain into discharge.
+
+    area : at the gauge [km2]
+    soil : water that the soil can lack before nothing runs off [mm]
+    stores : (share of the runoff, time constant [d]) of each linear reservoir; shares add up to 1
+    """
+
+    area: float
+    soil: float
+    stores: tuple[tuple[float, float], ...]
+
+
+@dataclass(frozen=True)
+class Gap:
+    """Days without a value, both ends included."""
+
+    first: datetime.date
+    last: datetime.date
+
+
+@dataclass(frozen=True)
+class Demo:
+    """One demo site's record.
+
+    folder, file : where the record lies, below this script
+    gauge : its name for the comment in the file
+    seed : of the random numbers
+    first, last : first and last day
+    gaps : days left blank
+    """
+
+    folder: str
+    file: str
+    gauge: str
+    seed: int
+    first: datetime.date
+    last: datetime.date
+    climate: Climate
+    catchment: Catchment
+    gaps: tuple[Gap, ...]
+
+    @property
+    def path(self) -> Path:
+        """Where the record lies."""
+        return HERE / self.folder / self.file
+
+
+DEMOS = (
+    Demo(
+        folder="quernholm_weir",
+        file="ashwen_daily.csv",
+        gauge="River Ashwen at Sallow Bridge",
+        seed=4717,
+        first=datetime.date(1995, 10, 1),
+        last=datetime.date(2023, 9, 30),
+        climate=Climate(
+            wet_share=(0.58, 0.52, 0.50, 0.45, 0.44, 0.43, 0.44, 0.47, 0.48, 0.56, 0.58, 0.59),
+            wet_spell=0.35,
+            depth=(6.8, 6.0, 5.5, 4.9, 5.0, 5.4, 5.8, 6.2, 6.3, 6.9, 7.1, 7.2),
+            depth_shape=1.3,
+            evaporation=(0.4, 0.6, 1.1, 1.9, 2.7, 3.1, 3.1, 2.6, 1.7, 0.9, 0.5, 0.3),
+            spread=0.22,
+        ),
+        catchment=Catchment(
+            area=486.0, soil=160.0, stores=((0.46, 1.4), (0.34, 14.0), (0.20, 110.0))
+        ),
+        gaps=(
+            Gap(datetime.date(1998, 7, 14), datetime.date(1998, 7, 16)),
+            Gap(datetime.date(2001, 12, 25), datetime.date(2002, 2, 11)),
+            Gap(datetime.date(2010, 6, 3), datetime.date(2010, 6, 4)),
+            Gap(datetime.date(2016, 12, 26), datetime.date(2016, 12, 27)),
+            Gap(datetime.date(2019, 8, 19), datetime.date(2019, 8, 21)),
+        ),
+    ),
+)
+
+
+def uniforms(seed: int) -> Iterator[float]:
+    """Random numbers between 0 and 1, neither included.
+
+    They are made from the raw stream of the generator, which numpy keeps for good; its
+    distributions may change from version to version.
+    """
+    generator = np.random.PCG64(seed)
+    while True:
+        for raw in generator.random_raw(4096):
+            yield (int(raw >> np.uint64(11)) + 0.5) / 2**53
+
+
+def days_between(first: datetime.date, last: datetime.date) -> list[datetime.date]:
+    """All days from `first` to `last`, both included."""
+    return [first + k * DAY for k in range((last - first).days + 1)]
+
+
+def rainfall(days: list[datetime.date], climate: Climate, draw: Iterator[float]) -> Floats:
+    """Rain of each day [mm], shape (n,)."""
+    rain = np.zeros(len(days))
+    wet, weather = False, 0.0
+    mean_of_shape = math.gamma(1 + climate.depth_shape)
+    for k, day in enumerate(days):
+        if day.day == 1:
+            news = sum(next(draw) for _ in range(12)) - 6  # close to standard normal
+            weather = WEATHER_MEMORY * weather + math.sqrt(1 - WEATHER_MEMORY**2) * news
+        share = climate.wet_share[day.month - 1]
+        wet = next(draw) < share + climate.wet_spell * (wet - share)
+        size = (-math.log(next(draw))) ** climate.depth_shape / mean_of_shape
+        factor = math.exp(climate.spread * weather - climate.spread**2 / 2)
+        rain[k] = wet * climate.depth[day.month - 1] * factor * size
+    return rain
+
+
+def runoff(days: list[datetime.date], rain: Floats, evaporation: Monthly, soil: float) -> Floats:
+    """What the soil lets go [mm/d], shape (n,): little in a dry summer, nearly all in winter."""
+    released = np.zeros(len(days))
+    lacking = 0.0
+    for k, day in enumerate(days):
+        moist = 1 - lacking / soil
+        held_back = min(lacking, rain[k] * (1 - moist**2))
+        released[k] = rain[k] - held_back
+        lacking += evaporation[day.month - 1] * moist - held_back
+    return released
+
+
+def drained(inflow: Floats, time_constant: float) -> Floats:
+    """Outflow of a linear reservoir that starts empty, in the unit of `inflow`, shape (n,).
+
+    time_constant : days in which an undisturbed outflow falls to 1/e
+    """
+    kept = math.exp(-1 / time_constant)
+    outflow = np.zeros(inflow.size)
+    stored = 0.0
+    for k, entering in enumerate(inflow):
+        stored += entering
+        outflow[k] = stored * (1 - kept)
+        stored *= kept
+    return outflow
+
+
+def discharge(demo: Demo) -> Floats:
+    """Daily mean discharge from the first to the last day [m3/s], gaps not yet made."""
+    days = days_between(demo.first - WARM_UP_DAYS * DAY, demo.last)
+    rain = rainfall(days, demo.climate, uniforms(demo.seed))
+    released = runoff(days, rain, demo.climate.evaporation, demo.catchment.soil)
+    depth = sum(
+        (drained(share * released, time) for share, time in demo.catchment.stores),
+        np.zeros(len(days)),
+    )
+    return depth[WARM_UP_DAYS:] * demo.catchment.area * 1000 / SECONDS_PER_DAY
+
+
+def three_digits(value: float) -> str:
+    """A discharge as gauges report it: "0.873", "10.0", "123"."""
+    text = np.format_float_positional(value, precision=3, unique=False, fractional=False, trim="k")
+    return text.rstrip(".")
+
+
+def record_text(demo: Demo) -> str:
+    """The record as the text of a CSV file."""
+    blank = {day for gap in demo.gaps for day in days_between(gap.first, gap.last)}
+    days = days_between(demo.first, demo.last)
+    rows = [
+        f"{day.isoformat()},{'' if day in blank else three_digits(value)}"
+        for day, value in zip(days, discharge(demo), strict=True)
+    ]
+    comments = [
+        f"# {demo.gauge}, daily mean discharge. The river is invented, and so are all values:",
+        f"# made by demo_sites/make_records.py with seed {demo.seed}.",
+    ]
+    return "\n".join([*comments, "date,discharge_m3s", *rows]) + "\n"
+
+
+def main() -> None:
+    """Write all records."""
+    for demo in DEMOS:
+        demo.path.write_bytes(record_text(demo).encode("ascii"))
+
+
+if __name__ == "__main__":
+    main()
