@@ -1,4 +1,4 @@
-"""One kind of finding, shared by all rooms: what was looked at, against which limit, and how it came out."""
+"""One kind of finding, shared by all rooms: what was looked at, and how it came out."""
 
 from __future__ import annotations
 
@@ -13,9 +13,10 @@ class Check:
     """The outcome of one plausibility check.
 
     name : stable name in snake_case
-    outcome : "pass"; "warn", the result stands but needs a look; "fail", the result should not be used as it is
-    value : what was found, in the unit that the message states; None where there is no single number
-    limit : what it was held against, in the same unit; None where there is no single number
+    outcome : "pass"; "warn", the result stands but needs a look; "fail", the result should not be
+        used as it is
+    value : what was found, in the unit that the message states; None where there is no number
+    limit : what it was held against, in the same unit; None where there is no number
     message : one sentence for people, ending with the remedy unless the outcome is "pass"
     """
 

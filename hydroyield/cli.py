@@ -37,7 +37,9 @@ def _print_version(wanted: bool) -> None:
 def _common(
     version: Annotated[
         bool,
-        typer.Option("--version", help="Print the version.", callback=_print_version, is_eager=True),
+        typer.Option(
+            "--version", help="Print the version.", callback=_print_version, is_eager=True
+        ),
     ] = False,
 ) -> None:
     """Annual energy of small run-of-river hydropower sites."""

@@ -177,9 +177,7 @@ def _unknown_unit(text: str, unit: str, dimension: Dimension) -> str:
     readable = ", ".join(dimension.units)
     same_but_case = [known for known in dimension.units if known.lower() == unit.lower()]
     hint = f"; did you mean {same_but_case[0]}?" if same_but_case else ""
-    return (
-        f"'{text}': unit '{unit}' is not one of {dimension.name}; write one of {readable}{hint}"
-    )
+    return f"'{text}': unit '{unit}' is not one of {dimension.name}; write one of {readable}{hint}"
 
 
 def rounded(value: float, digits: int = 3) -> str:

@@ -97,7 +97,9 @@ class Estimate:
     def yearly_energy_mwh(self) -> dict[str, float]:
         """Energy of each year used, by the calendar year in which it ends [MWh]."""
         totals = self.energy_by_month.sum(axis=1) / WH_PER_MWH
-        return {str(year): float(total) for year, total in zip(self.cells.years, totals, strict=True)}
+        return {
+            str(year): float(total) for year, total in zip(self.cells.years, totals, strict=True)
+        }
 
     @property
     def years_used(self) -> list[str]:
@@ -192,9 +194,7 @@ class Estimate:
             ]
         exceedance = np.asarray(exceedance_percent(self.scheme.valid_discharge))
         order = np.argsort(self.scheme.valid_discharge)
-        exceeded = np.interp(
-            river, self.scheme.valid_discharge[order], exceedance[order]
-        )
+        exceeded = np.interp(river, self.scheme.valid_discharge[order], exceedance[order])
         frames = [
             pd.DataFrame(
                 {

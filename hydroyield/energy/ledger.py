@@ -43,7 +43,9 @@ def reference_head(scheme: Scheme) -> float:
     median = quantile(scheme.valid_discharge, [50.0])
     state = scheme.heads.at(median, np.zeros(1), np.zeros(1))
     headwater = scheme.heads.headwater
-    upper = headwater.crest if isinstance(headwater, Weir) else float(state.headwater(np.zeros(1))[0])
+    upper = (
+        headwater.crest if isinstance(headwater, Weir) else float(state.headwater(np.zeros(1))[0])
+    )
     return upper - float(state.tailwater(np.zeros(1))[0])
 
 

@@ -101,9 +101,7 @@ def rate_units(
     """
     total = _total_discharge(units, setting)
     state, _ = setting.state(total)
-    return tuple(
-        _rated(number, unit, total, setting) for number, unit in enumerate(units)
-    ), state
+    return tuple(_rated(number, unit, total, setting) for number, unit in enumerate(units)), state
 
 
 def _rated(number: int, unit: UnitSpecification, total: float, setting: Setting) -> UnitGroup:

@@ -73,7 +73,7 @@ def _transfer(site: SiteDescription) -> Iterator[Check]:
         low if ratio < low else high,
         f"The site drains {ratio:.2f} times the area of the gauge.",
         f"The site drains {ratio:.2f} times the area of the gauge; the method is trusted from "
-        f"{low:g} to {high:g} on the same stream (USGS SIR 2008-5126). Gauge the site for a season.",
+        f"{low:g} to {high:g} on the same stream (USGS SIR 2008-5126). Gauge the site itself.",
     )
 
 
@@ -125,7 +125,11 @@ def _left_out(site: SiteDescription) -> Iterator[Check]:
         effect = _EFFECT_OF_LEAVING_OUT.get(note.key)
         what = f"Not stated: {note.key} ({note.text})"
         yield Check(
-            name, "warn" if effect else "pass", None, None, f"{what}; {effect}." if effect else f"{what}."
+            name,
+            "warn" if effect else "pass",
+            None,
+            None,
+            f"{what}; {effect}." if effect else f"{what}.",
         )
 
 

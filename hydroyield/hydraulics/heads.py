@@ -91,6 +91,7 @@ class HeadState:
         """Headwater level [m]."""
         if self.fixed_headwater is not None:
             return self.fixed_headwater
+        assert self.after_abstraction is not None  # one of the two is always there
         return self.heads.headwater(self.after_abstraction - turbined)
 
     def tailwater(self, turbined: Floats) -> Floats:
@@ -111,5 +112,3 @@ class HeadState:
     def net(self, turbined: Floats, axis_level: float | None = None) -> Floats:
         """Net head [m]; negative where the losses exceed the gross head."""
         return self.gross(turbined, axis_level) - self.loss(turbined)
-
-

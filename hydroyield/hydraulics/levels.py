@@ -1,4 +1,4 @@
-"""Water levels against discharge. Every form is called with a discharge [m3/s] and gives a level [m]."""
+"""Water levels against discharge. Each form is called with discharge [m3/s] and gives level [m]."""
 
 from __future__ import annotations
 

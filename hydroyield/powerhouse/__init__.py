@@ -1,7 +1,8 @@
 """Turbines, generators and how the units of a plant share the water."""
 
 from hydroyield.powerhouse.dispatch import HeadLines
-from hydroyield.powerhouse.operation import Dispatcher, Operation, operate
+from hydroyield.powerhouse.dispatcher import Dispatcher
+from hydroyield.powerhouse.operation import Operation, operate
 from hydroyield.powerhouse.types import MachineType, machine_types
 from hydroyield.powerhouse.units import EfficiencyCurve, Electrical, Plant, UnitGroup
 

@@ -86,7 +86,10 @@ class DispatchTable:
 
     def _reference(self, heads: Floats) -> Floats:
         """Scale of power at heads (lines, n): the sum of the stretched heads of the free lines."""
-        return sum((self._stretched(heads[line]) for line in self.lines.free), np.float64(0))
+        scale = np.zeros(heads.shape[1])
+        for line in self.lines.free:
+            scale += self._stretched(heads[line])
+        return scale
 
     def _head_nodes(self, line: int, seen: Floats) -> Floats:
         """Heads of the rows: 0, the heads at which a capacity begins to limit, and some more.
@@ -105,7 +108,7 @@ class DispatchTable:
         lowest = min(limits) if self._alike else 0.0
         even, shares = HEAD_NODES if len(self.lines.free) == 1 else HEAD_NODES_OF_TWO_LINES
         inner = seen[(seen > lowest) & (seen < highest)]
-        spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else []
+        spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else inner
         return _apart([0.0, *limits, *np.linspace(lowest, highest, even), *spread])
 
     def _limiting_head(self, group: UnitGroup) -> float:
@@ -139,15 +142,10 @@ class DispatchTable:
 
     def full_discharge(self, heads: Floats) -> Floats:
         """(n,) discharge of all units fully open [m3/s] at heads (lines, n) [m]."""
-        return sum(
-            (
-                group.count * full
-                for group, full in zip(
-                    self.plant.groups, self.full_discharges(heads), strict=True
-                )
-            ),
-            np.float64(0),
-        )
+        total = np.zeros(heads.shape[1])
+        for group, full in zip(self.plant.groups, self.full_discharges(heads), strict=True):
+            total += group.count * full
+        return total
 
     def _choose_steps(self) -> tuple[Ints, Ints]:
         """(groups, rows) steps of a fully open unit, and (rows,) columns of the open plant.
@@ -209,7 +207,7 @@ class DispatchTable:
 
     @cached_property
     def _best_below(self) -> Ints:
-        """(rows, columns) column of the largest output at or below each column, the first of equals."""
+        """(rows, columns) column of the largest output at or below each, the first of equals."""
         running = np.maximum.accumulate(self._values, axis=1)
         earlier = np.concatenate([np.full((running.shape[0], 1), -np.inf), running[:, :-1]], axis=1)
         tolerance = 1e-12 * np.abs(np.where(np.isfinite(earlier), earlier, 0.0))
@@ -270,7 +268,7 @@ class DispatchTable:
         left = flat[start]
         right = flat[start + (part > 0)]
         with np.errstate(invalid="ignore"):  # -inf beside a number: no sharing passes this total
-            return np.where(part > 0, left + part * (right - left), left)
+            return np.asarray(np.where(part > 0, left + part * (right - left), left))
 
     def best_share_below(self, heads: Floats, discharge: Floats) -> Floats:
         """Share of the open plant's discharge with the largest output at or below `discharge`.
@@ -323,7 +321,7 @@ class DispatchTable:
 def _apart(heads: list[float]) -> Floats:
     """Sorted heads without those that coincide with the one before."""
     nodes = np.unique(heads)
-    return nodes[np.concatenate([[True], np.diff(nodes) > 1e-9 * nodes[-1]])]
+    return np.asarray(nodes[np.concatenate([[True], np.diff(nodes) > 1e-9 * nodes[-1]])])
 
 
 def max_plus(first: Floats, second: Floats) -> Floats:

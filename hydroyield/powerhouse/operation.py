@@ -13,22 +13,22 @@ is kept, so that an output is never larger than what the plant can reach:
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.hydraulics import HeadState
-from hydroyield.powerhouse.dispatch import COLUMNS_PER_UNIT, DispatchTable, HeadLines
-from hydroyield.powerhouse.units import Plant
+from hydroyield.powerhouse.dispatch import COLUMNS_PER_UNIT
+from hydroyield.powerhouse.dispatcher import Dispatcher
+from hydroyield.powerhouse.solving import fixed_point, last_not_below
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
-SEARCH_STATES = 384  # states of the river at which the coarse search is done
-SEARCH_STEPS = 96  # discharges tried at each
+SEARCH_STATES = 144  # states of the river at which the coarse search is done
+SEARCH_STEPS = 64  # discharges tried at each
 REFINEMENTS = 4  # of the grid around the best of these
 EQUAL_OUTPUT = 1e-5  # outputs closer than this share count as equal; the tables are no finer
 LITTLE_LESS = 1e-3  # share of the discharge by which it is lowered to see whether output falls
@@ -60,163 +60,6 @@ class Operation:
     at_capacity: Bools
 
 
-class Dispatcher:
-    """A plant on its waterway: tables for every set of units that can run.
-
-    seen : (lines, m) net heads like those that will occur, the highest among them [m]
-    """
-
-    def __init__(self, plant: Plant, seen: Floats) -> None:
-        self.plant = plant
-        self.lines = HeadLines.of(plant.groups)
-        self._seen = seen
-        self._tables: dict[int, DispatchTable] = {}
-        self._every_group = 2 ** len(plant.groups) - 1
-
-    def _table(self, running: int) -> tuple[DispatchTable, list[int]]:
-        """Table of the groups in the bit mask `running`, and the lines they use."""
-        groups = [g for n, g in enumerate(self.plant.groups) if running >> n & 1]
-        lines = HeadLines.of(tuple(groups))
-        used = [self.lines.lower_ends.index(end) for end in lines.lower_ends]
-        if running not in self._tables:
-            part = replace(self.plant, groups=tuple(groups))
-            self._tables[running] = DispatchTable(part, lines, self._seen[used])
-        return self._tables[running], used
-
-    def heads(self, state: HeadState, turbined: Floats) -> Floats:
-        """(lines, n) net heads [m], 0 where the losses take all."""
-        net = [state.net(turbined, end) for end in self.lines.lower_ends]
-        return np.maximum(0.0, np.stack(net))
-
-    def admissible(self, state: HeadState, turbined: Floats, heads: Floats) -> Ints:
-        """(n,) bit mask of the groups that head and tailwater allow to run."""
-        mask = np.zeros(turbined.shape, dtype=np.int64)
-        for number, (group, line) in enumerate(
-            zip(self.plant.groups, self.lines.line_of_group, strict=True)
-        ):
-            # head found by a root search may miss the limit by its tolerance
-            enough = heads[line] >= self.plant.minimum_net_head - 1e-9
-            runs = enough & (heads[line] > 0)
-            if group.axis_level is not None:
-                runs &= state.tailwater(turbined) <= group.axis_level
-            mask |= runs.astype(np.int64) << number
-        return mask
-
-    def _by_mask(
-        self,
-        state: HeadState,
-        turbined: Floats,
-        read: Callable[[DispatchTable, Floats, Floats], Floats],
-        otherwise: float,
-    ) -> Floats:
-        """Read the table of whichever groups can run at each state."""
-        heads = self.heads(state, turbined)
-        mask = self.admissible(state, turbined, heads)
-        result = np.full(turbined.shape, otherwise)
-        for running in np.unique(mask):
-            if running:
-                table, used = self._table(int(running))
-                if (mask == running).all():
-                    return read(table, heads[used], turbined)
-                chosen = mask == running
-                result[chosen] = read(table, heads[np.ix_(used, np.flatnonzero(chosen))], turbined[chosen])
-        return result
-
-    def output(self, state: HeadState, turbined: Floats) -> Floats:
-        """(n,) largest output with exactly this total [W]; 0 at a stand, -inf where impossible."""
-        output = self._by_mask(state, turbined, DispatchTable.output, -np.inf)
-        return np.where(turbined > 0, output, 0.0)
-
-    def fully_open(self, state: HeadState, turbined: Floats) -> Floats:
-        """(n,) discharge of all units fully open at the heads of `turbined` [m3/s]."""
-        table, used = self._table(self._every_group)
-        return table.full_discharge(self.heads(state, turbined)[used])
-
-    def discharge_at_capacity(self, state: HeadState, turbined: Floats, running: Ints) -> Floats:
-        """(n,) least total at which all running units give their capacity, inf where they cannot.
-
-        turbined : (n,) for the heads [m3/s]
-        running : (n, groups) 1 for the groups that run
-        """
-        heads = self.heads(state, turbined)
-        total = np.zeros(turbined.size)
-        for number, (group, line) in enumerate(
-            zip(self.plant.groups, self.lines.line_of_group, strict=True)
-        ):
-            full = group.full_discharge(heads[line])
-            open_power = self.plant.terminal_weight * full * heads[line]
-            share = group.share_giving(group.unit_capacity / np.maximum(open_power, 1e-300))
-            runs = running[:, number] == 1
-            total[runs] += group.count * np.where(full > 0, share, np.inf)[runs] * np.maximum(full, 1e-300)[runs]
-        return total
-
-    def unit_discharges(self, state: HeadState, turbined: Floats) -> Floats:
-        """(units, n) discharge of each unit [m3/s], units in the order of the groups.
-
-        Found to one column of the table, and scaled to add up to `turbined`.
-        """
-        heads = self.heads(state, turbined)
-        mask = self.admissible(state, turbined, heads)
-        group_of_unit = np.repeat(
-            np.arange(len(self.plant.groups)), [g.count for g in self.plant.groups]
-        )
-        discharges = np.zeros((group_of_unit.size, turbined.size))
-        for running in np.unique(mask[turbined > 0]):
-            chosen = np.flatnonzero((mask == running) & (turbined > 0))
-            table, used = self._table(int(running))
-            own = heads[np.ix_(used, chosen)]
-            units = np.flatnonzero(running >> group_of_unit & 1)
-            full = table.full_discharges(own)[np.unique(group_of_unit[units], return_inverse=True)[1]]
-            found = table.unit_shares(own, turbined[chosen]) * full
-            total = found.sum(axis=0)
-            scale = np.divide(turbined[chosen], total, out=np.ones_like(total), where=total > 0)
-            discharges[np.ix_(units, chosen)] = found * scale
-        return discharges
-
-    def settle(self, state: HeadState, limit: Floats) -> Floats:
-        """(n,) discharge at or below `limit` with the largest output at the head of the moment."""
-        share = self._by_mask(state, limit, DispatchTable.best_share_below, 0.0)
-
-        def at_share(turbined: Floats) -> Floats:
-            return share * self._by_mask(state, turbined, _open_discharge, 0.0)
-
-        turbined = at_share(limit)
-        if not state.depends_on_turbines:
-            return turbined
-        return _fixed_point(at_share, turbined)
-
-
-def _open_discharge(table: DispatchTable, heads: Floats, _: Floats) -> Floats:
-    return table.full_discharge(heads)
-
-
-def _fixed_point(function: Callable[[Floats], Floats], start: Floats, rounds: int = 12) -> Floats:
-    """Solve x = function(x) for a falling function by secants (Steffensen's method)."""
-    x = start
-    for _ in range(rounds):
-        once = function(x)
-        twice = function(once)
-        bend = twice - 2 * once + x
-        step = np.divide((once - x) ** 2, bend, out=np.zeros_like(x), where=np.abs(bend) > 1e-300)
-        new = np.where(np.abs(bend) > 1e-14 * (np.abs(x) + 1e-12), x - step, twice)
-        new = np.maximum(0.0, new)
-        if np.all(np.abs(new - x) <= 1e-10 * (np.abs(x) + 1e-12)):
-            return new
-        x = new
-    return x
-
-
-def _last_not_below(
-    function: Callable[[Floats], Floats], low: Floats, high: Floats, rounds: int = 48
-) -> Floats:
-    """Bisect for the largest x in [low, high] with function(x) >= 0; function(low) must hold."""
-    for _ in range(rounds):
-        middle = 0.5 * (low + high)
-        holds = function(middle) >= 0
-        low, high = np.where(holds, middle, low), np.where(holds, high, middle)
-    return low
-
-
 def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: Bools) -> Operation:
     """Find how the plant runs.
 
@@ -230,11 +73,16 @@ def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: 
     if state.depends_on_turbines:
         for candidate in (_admissible_limit, _coarse_search):
             turbined, output = candidate(dispatcher, state, reach, turbined, output)
-    turbined, output = _refine(dispatcher, state, reach, turbined, output)
-    turbined = _least_of_equals(dispatcher, state, turbined, output)
-    turbined, output, at_capacity = _least_at_capacity(
-        dispatcher, state, reach, turbined, output
-    )
+    turbined, output, at_capacity = _least_at_capacity(dispatcher, state, reach, turbined, output)
+    left = np.flatnonzero((output > 0) & ~at_capacity & (turbined < reach * (1 - 1e-9)))
+    if left.size:
+        part = state[left]
+        turbined[left], output[left] = _refine(
+            dispatcher, part, reach[left], turbined[left], output[left]
+        )
+    left = np.flatnonzero((output > 0) & ~at_capacity)
+    if left.size:
+        turbined[left] = _least_of_equals(dispatcher, state[left], turbined[left], output[left])
     runs = (output > 0) & ~stopped
     turbined, output = np.where(runs, turbined, 0.0), np.where(runs, output, 0.0)
     at_capacity &= runs
@@ -264,10 +112,20 @@ def _full_opening(dispatcher: Dispatcher, state: HeadState, offered: Floats) -> 
     if short.size:
         part = state[short]
 
-        def spare(turbined: Floats) -> Floats:
-            return dispatcher.fully_open(part, turbined) - turbined
+        def open_at(turbined: Floats) -> Floats:
+            return dispatcher.fully_open(part, turbined)
 
-        fully_open[short] = _last_not_below(spare, np.zeros(short.size), offered[short])
+        found = fixed_point(open_at, fully_open[short])
+        missed = np.flatnonzero(np.abs(open_at(found) - found) > 1e-9 * (found + 1e-9))
+        if missed.size:  # where losses take most of the head, secants may wander
+            steep = part[missed]
+
+            def spare(turbined: Floats) -> Floats:
+                return dispatcher.fully_open(steep, turbined) - turbined
+
+            limit = offered[short[missed]]
+            found[missed] = last_not_below(spare, np.zeros(missed.size), limit)
+        fully_open[short] = found
     return fully_open
 
 
@@ -302,12 +160,10 @@ def _admissible_limit(
         if cut.size:
             part = state[cut]
 
-            def spare(
-                tried: Floats, part: HeadState = part, end: float | None = end
-            ) -> Floats:
+            def spare(tried: Floats, part: HeadState = part, end: float | None = end) -> Floats:
                 return part.net(tried, end) - least
 
-            limit = _last_not_below(spare, np.zeros(cut.size), reach[cut])
+            limit = last_not_below(spare, np.zeros(cut.size), reach[cut])
             exact = dispatcher.output(part, limit)
             better = exact > output[cut]
             now = np.where(better, limit, turbined[cut]), np.where(better, exact, output[cut])
@@ -318,7 +174,7 @@ def _admissible_limit(
 def _coarse_search(
     dispatcher: Dispatcher, state: HeadState, reach: Floats, turbined: Floats, output: Floats
 ) -> tuple[Floats, Floats]:
-    """Search a grid of discharges at some states; where less than all is best, try it everywhere."""
+    """Search a grid of discharges at some states; where less than all is best, try it around."""
     count = reach.size
     nodes = np.unique(np.linspace(0, count - 1, min(count, SEARCH_STATES)).astype(np.int64))
     part_of_reach = np.linspace(0, 1, SEARCH_STEPS + 1)[1:]
@@ -345,31 +201,24 @@ def _coarse_search(
 def _refine(
     dispatcher: Dispatcher, state: HeadState, reach: Floats, turbined: Floats, output: Floats
 ) -> tuple[Floats, Floats]:
-    """Where the best is less than all that can be passed, search around it on a finer and finer grid."""
-    inner = np.flatnonzero((output > 0) & (turbined < reach * (1 - 1e-9)))
-    if not inner.size:
-        return turbined, output
-    part, most = state[inner], reach[inner]
-    best, most_output = turbined[inner], output[inner]
-    width = most / SEARCH_STEPS
+    """Search around what is known on a finer and finer grid."""
+    width = reach / SEARCH_STEPS
     for _ in range(REFINEMENTS):
-        centre = best
-        for step in (-0.75, -0.5, -0.25, 0.25, 0.5, 0.75):
-            tried = np.clip(centre + step * width, 0.0, most)
-            found = dispatcher.output(part, tried)
-            better = found > most_output
-            best = np.where(better, tried, best)
-            most_output = np.where(better, found, most_output)
-        width = width / 4
-    turbined, output = turbined.copy(), output.copy()
-    turbined[inner], output[inner] = best, most_output
+        centre = turbined
+        for step in (-0.6, -0.3, 0.3, 0.6):
+            tried = np.clip(centre + step * width, 0.0, reach)
+            found = dispatcher.output(state, tried)
+            better = found > output
+            turbined = np.where(better, tried, turbined)
+            output = np.where(better, found, output)
+        width = width / 3
     return turbined, output
 
 
 def _least_of_equals(
     dispatcher: Dispatcher, state: HeadState, turbined: Floats, output: Floats
 ) -> Floats:
-    """Where a little less water gives as much, as with a unit at its capacity, the least that does."""
+    """Where less water gives as much, as with a unit at its capacity, the least that does."""
     enough = output * (1 - EQUAL_OUTPUT)
     less = dispatcher.output(state, turbined * (1 - LITTLE_LESS))
     flat = np.flatnonzero((less >= enough) & (output > 0))
@@ -379,9 +228,9 @@ def _least_of_equals(
         def short(tried: Floats) -> Floats:
             return np.where(dispatcher.output(part, tried) < wanted, 0.0, -1.0)
 
-        low = _last_not_below(short, np.zeros(flat.size), high, rounds=20)
+        low = last_not_below(short, np.zeros(flat.size), high, rounds=12)
         turbined = turbined.copy()
-        turbined[flat] = low + (high - low) * 2.0**-20
+        turbined[flat] = low + (high - low) * 2.0**-12
     return turbined
 
 
@@ -406,7 +255,7 @@ def _least_at_capacity(
 
         low = np.zeros(chosen.size)
         turbined, output = turbined.copy(), output.copy()
-        turbined[chosen] = _last_not_below(short, low, reach[chosen])
+        turbined[chosen] = last_not_below(short, low, reach[chosen])
         output[chosen] = capacity[chosen]
     return turbined, output, full
 
@@ -443,7 +292,7 @@ def _no_head(dispatcher: Dispatcher, state: HeadState) -> Bools:
         ],
         axis=0,
     )
-    return dispatcher.admissible(state, least, dispatcher.heads(state, least)) == 0
+    return np.asarray(dispatcher.admissible(state, least, dispatcher.heads(state, least)) == 0)
 
 
 def _mean_heads(

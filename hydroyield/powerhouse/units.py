@@ -91,7 +91,7 @@ class UnitGroup:
         return float(self._relative_output[1][-1])
 
     def share_giving(self, relative_output: Floats) -> Floats:
-        """Least share of full discharge with this share x efficiency; inf where it is not reached."""
+        """Least share of full discharge with this share x efficiency; inf where not reached."""
         share, relative = self._relative_output
         return np.interp(relative_output, relative, share, right=np.inf)
 

@@ -56,7 +56,9 @@ def _headline(estimate: SiteEstimate) -> Iterator[str]:
     yield "-" * len(estimate.site.name)
     yield _row("Mean annual energy", f"{rounded(estimate.mean_annual_energy_mwh)} MWh")
     yield _row("Capacity factor", f"{estimate.capacity_factor:.0%}")
-    yield _row("Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, " + _units(estimate))
+    yield _row(
+        "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, " + _units(estimate)
+    )
     yield _row("Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW")
     yield _row(
         "Years",

@@ -1,8 +1,9 @@
-"""The record condensed once: distinct pairs of season and river discharge, and how often each occurs.
+"""The record condensed once: distinct pairs of season and discharge, and how often each occurs.
 
 Power depends on the river's discharge and, through the rules, on the season. So every plant is
 evaluated on the distinct pairs only, and energy by month and year follows from counting days: the
-day-by-day run to rounding. Gauges report few digits, so a long record has far fewer cells than days.
+day-by-day run to rounding. Gauges report few digits, so a long record has far fewer cells than
+days.
 """
 
 from __future__ import annotations
@@ -49,7 +50,9 @@ class Cells:
     def weight(self) -> Floats:
         """(c,) hours a year that each cell stands for; they add up to `hours_per_year`."""
         hours_of_day = (self.hours / self.valid_days / self.years.size).ravel()[self.month_of_day]
-        return np.bincount(self.cell_of_day, hours_of_day, self.discharge.size)
+        return np.asarray(
+            np.bincount(self.cell_of_day, hours_of_day, self.discharge.size), dtype=np.float64
+        )
 
     def mean(self, values: Floats) -> float:
         """Mean over the hours of the years used of a quantity given by cell, (c,)."""

@@ -27,7 +27,8 @@ DAYS_PER_YEAR = 365.25
 
 def _positions(count: int, position: Position) -> Floats:
     constant = PLOTTING_CONSTANT[position]
-    return (np.arange(1, count + 1) - constant) / (count + 1 - 2 * constant)
+    rank = np.arange(1, count + 1, dtype=np.float64)
+    return (rank - constant) / (count + 1 - 2 * constant)
 
 
 def exceedance_percent(values: ArrayLike, position: Position = "weibull") -> Floats:

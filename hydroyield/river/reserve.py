@@ -106,9 +106,7 @@ class WaterRules:
 
         discharge, season : arrays of one shape
         """
-        release = np.maximum(
-            0.0, self.environmental_flow(discharge, season) - self.counted[season]
-        )
+        release = np.maximum(0.0, self.environmental_flow(discharge, season) - self.counted[season])
         return np.maximum(0.0, discharge - release - self.abstracted[season])
 
     def reserved_for_river(self, discharge: Floats, season: Ints) -> Floats:

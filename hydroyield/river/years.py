@@ -48,7 +48,8 @@ def month_days(year: Ints, month: Ints, start_month: int) -> Ints:
     """Days of each calendar month that lies in a hydrological year; arrays of one shape."""
     calendar_year = year - ((month >= start_month) & (start_month > 1))
     first = (12 * (calendar_year - 1970) + month - 1).astype("datetime64[M]")
-    return ((first + 1).astype("datetime64[D]") - first.astype("datetime64[D]")).astype(np.int64)
+    last = (first + 1).astype("datetime64[D]") - first.astype("datetime64[D]")
+    return np.asarray(last.astype(np.int64))
 
 
 @dataclass(frozen=True)
@@ -67,7 +68,7 @@ class MonthTable:
     @property
     def hours(self) -> Floats:
         """(y, 12) hours of each month, January first."""
-        return self.days * HOURS_PER_DAY
+        return self.days.astype(np.float64) * HOURS_PER_DAY
 
 
 def count_months(calendar: Calendar, has_value: NDArray[np.bool_]) -> MonthTable:
@@ -92,10 +93,10 @@ def usable_years(
     """
     # a month without any value has no mean, whatever the coverage asked for
     enough = (months.valid > 0) & (months.valid >= minimum_coverage * months.days - 1e-9)
-    used = enough.all(axis=1)
+    used: NDArray[np.bool_] = np.asarray(enough.all(axis=1))
     reasons = {
         str(months.years[row]): _reason(months, row, enough[row], start_month)
-        for row in np.flatnonzero(~used)
+        for row in np.flatnonzero(~used).tolist()
     }
     return used, reasons
 

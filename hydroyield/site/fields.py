@@ -131,7 +131,7 @@ class Quantity:
 def _si_unit(dimension: Dimension) -> str:
     if dimension is PERCENT:
         return "%"
-    return next((unit for unit, scale in dimension.units.items() if scale == (1.0, 0.0)), "")
+    return next((unit for unit, scale in dimension.units.items() if scale[0] == 1 and scale[1] == 0), "")
 
 
 @dataclass(frozen=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 
 import numpy as np
@@ -30,7 +31,7 @@ def naive_table(table: LevelTable, flow: float) -> float:
     points = list(zip(table.discharges, table.levels, strict=True))
     if flow <= points[0][0]:
         return points[0][1]
-    for (q0, z0), (q1, z1) in zip(points[:-1], points[1:], strict=True):
+    for (q0, z0), (q1, z1) in itertools.pairwise(points):
         if flow <= q1 or q1 == points[-1][0]:
             return z0 + (flow - q0) * (z1 - z0) / (q1 - q0)
     raise AssertionError

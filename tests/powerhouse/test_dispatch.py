@@ -14,7 +14,7 @@ from hypothesis import strategies as st
 from scipy.interpolate import PchipInterpolator
 from scipy.optimize import brentq
 
-from hydroyield.powerhouse.dispatch import COLUMNS, DispatchTable, HeadLines, max_plus
+from hydroyield.powerhouse.dispatch import COLUMNS, HEAD_NODES, DispatchTable, HeadLines, max_plus
 from hydroyield.powerhouse.types import machine_types
 from hydroyield.powerhouse.units import EfficiencyCurve, Electrical, Plant, UnitGroup
 
@@ -43,7 +43,7 @@ def plant(*groups: UnitGroup) -> Plant:
 def table(of: Plant) -> DispatchTable:
     lines = HeadLines.of(of.groups)
     assert lines.lower_ends == (None,)
-    return DispatchTable(of, lines, np.array([HIGHEST]))
+    return DispatchTable(of, lines, np.linspace(0.3, HIGHEST, 200)[None])
 
 
 # --- the same power, written a second time --------------------------------------------------------
@@ -144,7 +144,7 @@ def tabulated(name: str, limited: bool) -> tuple[Plant, DispatchTable]:
 
 
 def away_from_edges(units: list[UnitGroup], head: float, count: int) -> np.ndarray:
-    """Totals of all sizes more than one step of the table from where a unit may start or is open."""
+    """Totals of all sizes more than one step of the table from any edge."""
     opened = sum(full_discharge(u, head) for u in units)
     totals = np.random.default_rng(4).uniform(0, 1.1, count) * opened
     distance = np.abs(totals[:, None] - edges(units, head)).min(axis=1)
@@ -183,20 +183,24 @@ def test_output_against_every_sharing(name: str, head: float) -> None:
     np.testing.assert_allclose(found[possible], expected[possible], rtol=1e-3)
 
 
-# capacities hold from a little below the rated head: 0.7 and 2.3 m are below, the others above
-TO_THE_ONSET = pytest.mark.xfail(
-    strict=False,
-    reason="between two heads of the table the onset of the capacity is drawn straight: "
-    "0.1 to 0.3 % at single totals",
+# The heads of the table rise by even steps from where a capacity begins to limit. Between two of
+# them power at a given opening is drawn straight in z = H^1.5; where it is min(a z, capacity) that
+# falls short by at most (s - 1) / (s + 1) at the onset, s^2 being the ratio of z (derived).
+ONSET_HEAD = RATED_HEAD * 0.92 ** (2 / 3)
+_STEP = (HIGHEST - ONSET_HEAD) / (HEAD_NODES[0] - 1)
+_S = (1 + _STEP / ONSET_HEAD) ** 0.75
+SHORT_AT_ONSET = (_S - 1) / (_S + 1)
+AT_THE_ONSET = pytest.mark.xfail(
+    strict=False, reason="the onset of the capacity is drawn straight between two heads"
 )
 
 
 @pytest.mark.parametrize(
-    "head", [0.7, 2.3, pytest.param(4.0, marks=TO_THE_ONSET), pytest.param(5.6, marks=TO_THE_ONSET)]
+    "head", [0.7, 2.3, pytest.param(4.0, marks=AT_THE_ONSET), pytest.param(5.6, marks=AT_THE_ONSET)]
 )
 @pytest.mark.parametrize("name", PLANTS)
 def test_limited_output_against_every_sharing(name: str, head: float) -> None:
-    """To 0.1 % as well."""
+    """To 0.1 % as well; at 4.0 and 5.6 m, where the capacity limits, not at every total."""
     found, expected = tabulated_and_searched(name, True, head)
     possible = np.isfinite(expected)
     np.testing.assert_allclose(found[possible], expected[possible], rtol=1e-3)
@@ -205,20 +209,21 @@ def test_limited_output_against_every_sharing(name: str, head: float) -> None:
 @pytest.mark.parametrize("head", [4.0, 5.6])
 @pytest.mark.parametrize("name", PLANTS)
 def test_limited_output_at_the_onset_of_the_capacity(name: str, head: float) -> None:
-    """What the table does reach there: 0.4 % at single totals. The mean is held below."""
+    """What is left is no more than the straight line between two heads explains."""
     found, expected = tabulated_and_searched(name, True, head)
     possible = np.isfinite(expected)
-    np.testing.assert_allclose(found[possible], expected[possible], rtol=4e-3)
+    allowed = 1e-3 + SHORT_AT_ONSET
+    np.testing.assert_allclose(found[possible], expected[possible], rtol=allowed)
 
 
 @pytest.mark.parametrize("head", HEADS)
 @pytest.mark.parametrize("limited", [False, True], ids=["open", "limited"])
 @pytest.mark.parametrize("name", PLANTS)
 def test_mean_output_against_every_sharing(name: str, limited: bool, head: float) -> None:
-    """What energy rests on, to 0.03 %."""
+    """What energy, held to 0.2 %, rests on: a quarter of that at a single head."""
     found, expected = tabulated_and_searched(name, limited, head)
     possible = np.isfinite(expected)
-    assert found[possible].sum() == pytest.approx(expected[possible].sum(), rel=3e-4)
+    assert found[possible].sum() == pytest.approx(expected[possible].sum(), rel=5e-4)
 
 
 @pytest.mark.parametrize("name", PLANTS)
@@ -292,7 +297,7 @@ def test_unit_shares_add_up_and_give_the_output(name: str) -> None:
         np.testing.assert_allclose(output, dispatch.output(heads, total), rtol=1e-3)
 
 
-# --- max-plus sums ----------------------------------------------------------------------------------
+# --- max-plus sums --------------------------------------------------------------------------------
 
 values = st.one_of(st.just(-math.inf), st.floats(-5, 50))
 

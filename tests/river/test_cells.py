@@ -154,8 +154,8 @@ def test_cells_are_distinct_pairs_of_season_and_discharge() -> None:
     assert found == list(days)
 
 
-def test_energy_does_not_depend_on_the_first_month_for_whole_calendar_and_other_years() -> None:
-    """A record in which every month of every year is alike has one energy, wherever it is cut."""
+def test_the_mean_year_does_not_depend_on_its_first_month() -> None:
+    """Where each month is the same in every year, wherever the year is cut."""
     dates = np.arange("1991-01-01", "1999-01-01", dtype="datetime64[D]")
     discharge = 3.0 + (dates.astype("datetime64[M]").astype(int) % 12).astype(float)
     means = []
