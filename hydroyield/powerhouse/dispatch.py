@@ -173,13 +173,20 @@ class DispatchTable:
 
     # --- the table ------------------------------------------------------------------------------
 
+    def _exact_steps(self, number: int) -> Floats:
+        """(rows,) columns that one fully open unit of a group takes, not rounded."""
+        heads = np.maximum(self._row_heads, 1e-6)
+        full = self.full_discharges(heads)[number]
+        return np.asarray(full / self.full_discharge(heads) * self._columns)
+
     def _unit_output(self, number: int) -> Floats:
         """(rows, steps + 1) output of one unit of a group over the scale of its row; -inf where
         it cannot run at that discharge, 0 at a stand."""
         group, steps = self.plant.groups[number], self._unit_steps[number]
         head = self._row_heads[self.lines.line_of_group[number]]
         column = np.arange(steps.max() + 1)
-        share = column / steps[:, None]
+        share = column / self._exact_steps(number)[:, None]
+        share = np.where(column == steps[:, None], 1.0, share)
         first = np.rint(group.minimum_share * steps)[:, None]
         runs = (column >= first) & (column <= steps[:, None])
         share = np.clip(share, group.minimum_share, 1.0)
@@ -253,7 +260,35 @@ class DispatchTable:
         # rows of unlike groups may disagree near an edge: the nearer row decides
         feasible = (settled > 0.5 * weights) & (share <= 1 + 1e-6)
         scale = np.divide(weights, settled, out=np.zeros_like(weights), where=settled > 0)
-        return np.where(feasible, total * scale, np.where(discharge == 0, 0.0, -np.inf))
+        output = np.where(feasible, total * scale, np.where(discharge == 0, 0.0, -np.inf))
+        if len(self._z) == 1 and self._z[0].size > 3:
+            bent = np.flatnonzero(feasible & (heads[self.lines.free[0]] > self._nodes[0][1]))
+            if bent.size:
+                output[bent] = self._with_bend(heads[:, bent], share[bent], output[bent])
+        return output
+
+    def _with_bend(self, heads: Floats, share: Floats, straight: Floats) -> Floats:
+        """Output between two rows where a unit reaches its capacity between them.
+
+        Output is straight on either side of that head, so the lines of the neighbouring intervals
+        are drawn on to where they meet; where they do not bound the chord from one side, the
+        chord stays.
+        """
+        nodes = self._z[0]
+        z = np.clip(self._stretched(heads[self.lines.free[0]]), 0, nodes[-1])
+        low = np.clip(np.searchsorted(nodes, z, side="right") - 1, 1, nodes.size - 3)
+        rows = [low - 1, low, low + 1, low + 2]
+        z0, z1, z2, z3 = (nodes[row] for row in rows)
+        p0, p1, p2, p3 = (self._along(row, share) * self._row_z[row] for row in rows)
+        with np.errstate(invalid="ignore"):  # where a row cannot pass this total the chord stays
+            left = p1 + (p1 - p0) / (z1 - z0) * (z - z1)
+            right = p2 - (p3 - p2) / (z3 - z2) * (z2 - z)
+            falls = np.minimum(np.minimum(left, right), np.minimum(p1 * z / z1, p2))
+            rises = np.maximum(left, right)
+        within = (z >= z1) & (z <= z2) & np.isfinite(left) & np.isfinite(right)
+        concave = within & (left >= straight) & (right >= straight)
+        convex = within & (left <= straight) & (right <= straight)
+        return np.where(concave, np.maximum(falls, straight), np.where(convex, rises, straight))
 
     def _along(self, row: Ints, share: Floats) -> Floats:
         """Scaled output in given rows at shares of the open plant's discharge."""
