@@ -26,8 +26,9 @@ Ints = NDArray[np.int64]
 # Rows stand at even steps of head, and at even shares of the heads that occur:
 HEAD_NODES = (24, 40)  # where heads of all groups end at one level
 HEAD_NODES_OF_TWO_LINES = (8, 20)  # where some end at the tailwater and some at an axis
-COLUMNS_PER_UNIT = 96
-COLUMNS = (256, 1024)  # fewest and most, before the search for the number that fits
+COLUMNS_PER_UNIT = 128
+LEAST_BAND = 0.02  # share by which the least discharge of a plant may miss its column
+COLUMNS = (384, 1024)  # fewest and most, before the search for the number that fits
 COLUMNS_OF_UNLIKE_UNITS = 512  # fewest, where units differ in size or curve
 
 
@@ -69,6 +70,7 @@ class DispatchTable:
         self._unit_steps, self._columns = self._choose_steps()
         self._stages = self._combine()
         self._values = self._stages[-1]
+        self._jumps = self._find_jumps()
         self._width = self._values.shape[1]
 
     # --- what the table is laid on -------------------------------------------------------------
@@ -212,6 +214,24 @@ class DispatchTable:
                 stages.append(max_plus(stages[-1], unit) if stages else unit)
         return stages
 
+    def _find_jumps(self) -> NDArray[np.int8]:
+        """(rows, columns) 1 where output jumps up to the next column, -1 where it jumps down.
+
+        From column to column one unit takes a step more, and output changes by what that unit
+        gains. A larger change means that a unit starts with the next column, or that the sharing
+        so far ended with this one; there is nothing in between.
+        """
+        units = [self._unit_output(number) for number in range(len(self.plant.groups))]
+        gains = [np.diff(np.where(np.isfinite(unit), unit, np.nan)) for unit in units]
+        most = np.max([np.where(np.isnan(g), -np.inf, g).max(axis=1) for g in gains], axis=0)
+        least = np.min([np.where(np.isnan(g), np.inf, g).min(axis=1) for g in gains], axis=0)
+        slack = 1e-9 * np.where(np.isfinite(most), np.abs(most), 0.0)
+        with np.errstate(invalid="ignore"):  # from one impossible total to the next
+            change = np.diff(self._values, append=-np.inf)
+        up = change > (most + slack)[:, None]
+        down = np.isfinite(change) & (change < (least - slack)[:, None])
+        return up.astype(np.int8) - down.astype(np.int8)
+
     @cached_property
     def _best_below(self) -> Ints:
         """(rows, columns) column of the largest output at or below each, the first of equals."""
@@ -265,6 +285,24 @@ class DispatchTable:
             bent = np.flatnonzero(feasible & (heads[self.lines.free[0]] > self._nodes[0][1]))
             if bent.size:
                 output[bent] = self._with_bend(heads[:, bent], share[bent], output[bent])
+        return self._at_least_discharge(heads, discharge, output)
+
+    def _at_least_discharge(self, heads: Floats, discharge: Floats, output: Floats) -> Floats:
+        """Output, exact about the least discharge of the plant, which may miss its column a little."""
+        groups, lines = self.plant.groups, self.lines.line_of_group
+        minima = np.array([group.minimum_share for group in groups])[:, None]
+        least = self.full_discharges(heads) * minima
+        first = least.argmin(axis=0)
+        least = least.min(axis=0)
+        output = np.where((discharge > 0) & (discharge < least * (1 - 1e-9)), -np.inf, output)
+        near = (discharge >= least * (1 - 1e-9)) & (discharge < least * (1 + LEAST_BAND))
+        for number in np.unique(first[near & ~np.isfinite(output)]):
+            group, line = groups[number], lines[number]
+            alone = np.flatnonzero(near & ~np.isfinite(output) & (first == number))
+            head = heads[line, alone]
+            share = discharge[alone] / np.maximum(group.full_discharge(head), 1e-300)
+            power = self.plant.terminal_weight * discharge[alone] * head * group.curve(share)
+            output[alone] = np.where(share <= 1, np.minimum(power, group.unit_capacity), -np.inf)
         return output
 
     def _with_bend(self, heads: Floats, share: Floats, straight: Floats) -> Floats:
@@ -302,6 +340,8 @@ class DispatchTable:
         start = row * self._width + low
         left = flat[start]
         right = flat[start + (part > 0)]
+        jump = self._jumps.ravel()[start]
+        part = np.where((part > 0) & (jump != 0), (jump < 0).astype(np.float64), part)
         with np.errstate(invalid="ignore"):  # -inf beside a number: no sharing passes this total
             return np.asarray(np.where(part > 0, left + part * (right - left), left))
 

@@ -136,6 +136,28 @@ class Dispatcher:
             discharges[np.ix_(units, chosen)] = found * scale
         return discharges
 
+    @property
+    def on_two_lines(self) -> bool:
+        """Whether some heads end at the tailwater and some at an axis; tables are coarser then."""
+        return len(self.lines.free) > 1
+
+    def output_of_best_sharing(self, state: HeadState, turbined: Floats) -> Floats:
+        """(n,) output [W] worked out unit by unit for the sharing that the table holds best."""
+        heads = self.heads(state, turbined)
+        discharges = self.unit_discharges(state, turbined)
+        units = [
+            (group, line)
+            for group, line in zip(self.plant.groups, self.lines.line_of_group, strict=True)
+            for _ in range(group.count)
+        ]
+        output = np.zeros(turbined.size)
+        for (group, line), discharge in zip(units, discharges, strict=True):
+            full = np.maximum(group.full_discharge(heads[line]), 1e-300)
+            share = np.clip(discharge / full, group.minimum_share, 1.0)
+            power = self.plant.terminal_weight * discharge * heads[line] * group.curve(share)
+            output += np.minimum(power, group.unit_capacity)
+        return output
+
     def settle(self, state: HeadState, limit: Floats) -> Floats:
         """(n,) discharge at or below `limit` with the largest output at the head of the moment."""
         share = self._by_mask(state, limit, DispatchTable.best_share_below, 0.0)

@@ -13,7 +13,9 @@ is kept, so that an output is never larger than what the plant can reach:
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -83,6 +85,8 @@ def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: 
     left = np.flatnonzero((output > 0) & ~at_capacity)
     if left.size:
         turbined[left] = _least_of_equals(dispatcher, state[left], turbined[left], output[left])
+    if dispatcher.on_two_lines:
+        output = dispatcher.output_of_best_sharing(state, turbined)
     runs = (output > 0) & ~stopped
     turbined, output = np.where(runs, turbined, 0.0), np.where(runs, output, 0.0)
     at_capacity &= runs
@@ -149,21 +153,33 @@ def _better(
     return np.where(better, settled, turbined), np.where(better, found, output)
 
 
+def _spare_head(
+    dispatcher: Dispatcher,
+) -> list[Callable[[HeadState, Floats], Floats]]:
+    """What must not be negative: net head above the minimum, and axes above the tailwater."""
+    least = max(dispatcher.plant.minimum_net_head, 1e-9)
+
+    def of_head(end: float | None, state: HeadState, tried: Floats) -> Floats:
+        return state.net(tried, end) - least
+
+    def of_axis(axis: float, state: HeadState, tried: Floats) -> Floats:
+        return axis - state.tailwater(tried)
+
+    ends = dispatcher.lines.lower_ends
+    axes = [end for end in ends if end is not None]
+    return [*(partial(of_head, end) for end in ends), *(partial(of_axis, end) for end in axes)]
+
+
 def _admissible_limit(
     dispatcher: Dispatcher, state: HeadState, reach: Floats, turbined: Floats, output: Floats
 ) -> tuple[Floats, Floats]:
-    """Try the largest discharge that keeps the minimum head, line by line."""
-    least = max(dispatcher.plant.minimum_net_head, 1e-9)
-    for end in dispatcher.lines.lower_ends:
-        standing = np.zeros(reach.size)
-        cut = np.flatnonzero((state.net(standing, end) >= least) & (state.net(reach, end) < least))
+    """Try the largest discharge that keeps the minimum head, or an axis above the tailwater."""
+    standing = np.zeros(reach.size)
+    for spare in _spare_head(dispatcher):
+        cut = np.flatnonzero((spare(state, standing) >= 0) & (spare(state, reach) < 0))
         if cut.size:
             part = state[cut]
-
-            def spare(tried: Floats, part: HeadState = part, end: float | None = end) -> Floats:
-                return part.net(tried, end) - least
-
-            limit = last_not_below(spare, np.zeros(cut.size), reach[cut])
+            limit = last_not_below(partial(spare, part), np.zeros(cut.size), reach[cut])
             exact = dispatcher.output(part, limit)
             better = exact > output[cut]
             now = np.where(better, limit, turbined[cut]), np.where(better, exact, output[cut])
@@ -246,6 +262,7 @@ def _least_at_capacity(
     bits = (mask[:, None] >> np.arange(len(dispatcher.plant.groups))) & 1
     capacity = bits @ np.array([g.count * g.unit_capacity for g in dispatcher.plant.groups])
     full = (dispatcher.discharge_at_capacity(state, reach, bits) <= reach) & (capacity > 0)
+    full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
     chosen = np.flatnonzero(full)
     if chosen.size:
         part, running = state[chosen], bits[chosen]
