@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from hydroyield.errors import RecordError
 from hydroyield.record.faults import SHOWN, Source, first_lines
 from hydroyield.record.result import Dropped
-from hydroyield.record.rows import DUPLICATE, NEGATIVE, REASONS, USED, Rows
+from hydroyield.record.rows import DUPLICATE, NEGATIVE, REASONS, REPEATED_HOUR, USED, Rows
 
 
 @dataclass(frozen=True)
@@ -38,15 +38,15 @@ def clean(rows: Rows, source: Source) -> Cleaned:
     disorder = _first_line_out_of_order(rows)
     # of one time, a row with a value comes first; else the order of the file stays
     order = np.lexsort((rows.reasons != USED, rows.times)) if _has_repeats(rows) else slice(None)
-    ordered = _select(rows, order)
+    ordered = rows.select(order)
     surplus = np.zeros(len(ordered.lines), dtype=np.bool_)
     surplus[1:] = np.diff(ordered.times) == 0
     _refuse_conflicts(ordered, surplus, source)
     reasons = ordered.reasons.copy()
-    reasons[surplus & (reasons != NEGATIVE)] = DUPLICATE
+    reasons[surplus & (reasons != NEGATIVE) & (reasons != REPEATED_HOUR)] = DUPLICATE
     _refuse_no_value(reasons, source)
     return Cleaned(
-        _select(ordered, ~surplus), len(reasons), _dropped(reasons, ordered.lines), disorder
+        ordered.select(~surplus), len(reasons), _dropped(reasons, ordered.lines), disorder
     )
 
 
@@ -62,23 +62,13 @@ def _negatives_as_missing(rows: Rows) -> Rows:
 
 
 def _first_line_out_of_order(rows: Rows) -> int | None:
-    back = np.flatnonzero(np.diff(rows.times) < 0)
-    return int(rows.lines[back[0] + 1]) if back.size else None
+    once = rows.reasons != REPEATED_HOUR
+    back = np.flatnonzero(np.diff(rows.times[once]) < 0)
+    return int(rows.lines[once][back[0] + 1]) if back.size else None
 
 
 def _has_repeats(rows: Rows) -> bool:
     return bool((np.diff(rows.times) <= 0).any())
-
-
-def _select(rows: Rows, which: slice | NDArray[np.int64] | NDArray[np.bool_]) -> Rows:
-    return replace(
-        rows,
-        dates=rows.dates[which],
-        seconds=rows.seconds[which],
-        values=rows.values[which],
-        lines=rows.lines[which],
-        reasons=rows.reasons[which],
-    )
 
 
 def _refuse_conflicts(rows: Rows, surplus: NDArray[np.bool_], source: Source) -> None:

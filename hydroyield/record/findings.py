@@ -19,21 +19,22 @@ _FAR_ABOVE = 3.0  # a sentinel stands at least so many times above every other v
 _GAP_LIMIT = 0.1  # share of missing days from which the gaps are worth a look
 
 
-def find(cleaned: Cleaned, daily: Daily, encoding: str) -> tuple[Check, ...]:
-    """All checks of a record, always in the same order."""
-    rows = cleaned.rows
+def of_rows(cleaned: Cleaned, encoding: str, file_format: str) -> tuple[Check, ...]:
+    """The checks that name lines of the file."""
     return (
         _rows_used(cleaned),
-        _encoding(encoding),
+        _encoding(encoding, file_format),
         _negative(cleaned),
         _duplicate(cleaned),
         _order(cleaned),
-        *rows.checks,
-        _sentinel(rows),
-        _future(daily),
-        _zeros(daily),
-        _gaps(daily),
+        *cleaned.rows.checks,
+        _sentinel(cleaned.rows),
     )
+
+
+def of_days(daily: Daily) -> tuple[Check, ...]:
+    """The checks of the daily means."""
+    return (_future(daily), _zeros(daily), _gaps(daily))
 
 
 def _check(name: str, good: bool, value: float, limit: float, fine: str, bad: str) -> Check:
@@ -59,14 +60,16 @@ def _rows_used(cleaned: Cleaned) -> Check:
     return _check("record_rows_used", share >= 0.5, share, 0.5, f"{counts}.", bad)
 
 
-def _encoding(encoding: str) -> Check:
+def _encoding(encoding: str, file_format: str) -> Check:
+    """Agencies that write no UTF-8 are known to; of any other file the encoding is a guess."""
+    guessed = encoding == "cp1252" and file_format == "plain"
     return Check(
         "record_encoding",
-        "warn" if encoding == "cp1252" else "pass",
+        "warn" if guessed else "pass",
         None,
         None,
         "The file is not UTF-8 and was read as cp1252; look whether names with accents are right."
-        if encoding == "cp1252"
+        if guessed
         else f"The file was read as {encoding}.",
     )
 

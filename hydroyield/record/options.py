@@ -16,11 +16,12 @@ class RecordOptions:
 
     unit : unit of the values, such as "m3/s", "l/s", "cfs" or "mm/d"
     date_column : name of the column of dates
-    value_column : name of the column of discharges
+    value_column : name of the column of discharges, or of the series where a file has several
     missing : extra marks for "no value", compared as text and as a number
     date_order : "day_first" or "month_first"
     decimal_mark : "point" or "comma"
     gauge_area_m2 : catchment area of the gauge [m2], needed for depths such as mm/d
+    file_format : name of the format, such as "usgs-rdb" or "plain"; found by looking when left out
     """
 
     unit: str | None = None
@@ -30,6 +31,7 @@ class RecordOptions:
     date_order: str | None = None
     decimal_mark: str | None = None
     gauge_area_m2: float | None = None
+    file_format: str | None = None
 
 
 def check_options(options: RecordOptions, source: Source) -> None:

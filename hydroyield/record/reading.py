@@ -3,18 +3,21 @@
 from __future__ import annotations
 
 import hashlib
+from collections import Counter
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
+from hydroyield.checks import Check
 from hydroyield.record import findings
-from hydroyield.record.cleaning import clean
-from hydroyield.record.daily import daily_means
+from hydroyield.record.cleaning import Cleaned, clean
+from hydroyield.record.daily import Daily, daily_means
 from hydroyield.record.faults import Source, in_lines
+from hydroyield.record.formats import PLAIN, format_of_text
 from hydroyield.record.options import RecordOptions, check_options
-from hydroyield.record.plain import read_plain
 from hydroyield.record.result import Receipt, Record
 from hydroyield.record.rows import BLANK, USED, Layout, Rows
 from hydroyield.record.text import read_document
@@ -31,28 +34,76 @@ def read_record(
 ) -> Record:
     """Read a discharge record.
 
-    path : the file, plain text with a column of dates and one of values, may be gzipped
+    path : the file, in a format of a gauging agency or plain delimited text, may be gzipped
     options : what the user says about the file
     shown_as : name of the file in messages; as in `path` when left out
 
     Raises RecordError with every fault found; nothing ambiguous is guessed.
     """
+    file = open_file(path, options, shown_as)
+    return record_of(file, daily_means(file.cleaned.rows, file.source))
+
+
+@dataclass(frozen=True)
+class ReadFile:
+    """A file that was read, or several joined, before daily means are taken.
+
+    source : its name for messages
+    sha256, encoding, file_format : as in the receipt
+    cleaned : the rows, in order of time
+    flags : {code of quality: rows that carry it}
+    checks : findings on the rows
+    files : (name, sha256) of each file, where several were joined
+    """
+
+    source: Source
+    sha256: str
+    encoding: str
+    file_format: str
+    cleaned: Cleaned
+    flags: dict[str, int]
+    checks: tuple[Check, ...]
+    files: tuple[tuple[str, str], ...] = ()
+
+
+def open_file(path: Path | str, options: RecordOptions, shown_as: str | None = None) -> ReadFile:
+    """Read the rows of one file. Raises RecordError with every fault found."""
     source = Source(shown_as or str(path))
     check_options(options, source)
     document = read_document(Path(path), source)
-    rows = read_plain(document.text, options, source)
-    return _record(rows, source, document.sha256, document.encoding)
+    found = format_of_text(document.text, options, source)
+    rows = found.read(document.text, options, source)
+    legacy = document.encoding == PLAIN.legacy_encoding
+    encoding = found.legacy_encoding if legacy else document.encoding
+    return _read_file(rows, source, document.sha256, encoding, found.name)
 
 
-def _record(rows: Rows, source: Source, sha256: str, encoding: str) -> Record:
+def _read_file(
+    rows: Rows, source: Source, sha256: str, encoding: str, file_format: str
+) -> ReadFile:
     cleaned = clean(rows, source)
-    daily = daily_means(cleaned.rows, source)
-    layout = rows.layout
+    flags = {} if rows.flags is None else Counter(rows.flags[rows.flags != ""].tolist())
+    checks = findings.of_rows(cleaned, encoding, file_format)
+    return ReadFile(source, sha256, encoding, file_format, cleaned, dict(flags), checks)
+
+
+def _estimated_share(rows: Rows) -> float:
+    """Share of the rows with a value whose flag says estimated or affected by ice."""
+    if rows.flags is None:
+        return 0.0
+    used = rows.flags[rows.reasons == USED]
+    return float(np.isin(used, sorted(rows.doubtful)).mean()) if used.size else 0.0
+
+
+def record_of(file: ReadFile, daily: Daily) -> Record:
+    """The record of rows that were read."""
+    cleaned = file.cleaned
+    layout = cleaned.rows.layout
     missing_days = int(np.count_nonzero(np.isnan(daily.means)))
     receipt = Receipt(
-        file=source.name,
-        sha256=sha256,
-        encoding=encoding,
+        file=file.source.name,
+        sha256=file.sha256,
+        encoding=file.encoding,
         delimiter=layout.delimiter,
         decimal_mark=layout.decimal_mark,
         date_format=layout.date_format,
@@ -72,9 +123,16 @@ def _record(rows: Rows, source: Source, sha256: str, encoding: str) -> Record:
         days=len(daily.dates) - missing_days,
         missing_days=missing_days,
         partial_days=daily.partial_days,
-        checks=findings.find(cleaned, daily, encoding),
+        checks=(*file.checks, *findings.of_days(daily)),
+        file_format=file.file_format,
+        station=layout.station,
+        series=layout.series,
+        catchment_area_m2=layout.catchment_area_m2,
+        flags=file.flags,
+        estimated_share=_estimated_share(cleaned.rows),
+        files=file.files,
     )
-    return Record(daily.dates, daily.means * rows.factor, receipt)
+    return Record(daily.dates, daily.means * cleaned.rows.factor, receipt)
 
 
 def record_from_series(series: pd.Series[float], unit: str, gauge_area_m2: float | None) -> Record:
@@ -90,7 +148,8 @@ def record_from_series(series: pd.Series[float], unit: str, gauge_area_m2: float
     lines = np.arange(1, len(values) + 1)
     rows = Rows(dates, seconds, values, lines, reasons, factor, layout)
     digest = hashlib.sha256(rows.times.tobytes() + values.tobytes()).hexdigest()
-    return _record(rows, source, digest, "none")
+    file = _read_file(rows, source, digest, "none", "none")
+    return record_of(file, daily_means(file.cleaned.rows, source))
 
 
 def _index_times(

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -18,7 +18,8 @@ if TYPE_CHECKING:
 class Dropped:
     """Rows of one kind that gave no value.
 
-    reason : "blank", "mark for missing", "negative" or "duplicate"
+    reason : "blank", "mark for missing", "negative", "duplicate" or "hour written twice as clocks
+        went back"
     count : how many
     lines : the first few line numbers
     """
@@ -36,7 +37,8 @@ class Receipt:
     sha256 : of the bytes of the file
     encoding, delimiter, decimal_mark, date_format : as found, in words
     date_column, value_column : names of the columns
-    unit, unit_source : unit in the file, and "site file", "column header" or "unit row"
+    unit, unit_source : unit in the file, and "site file", "column header", "unit row" or "file"
+        where the format says it
     rows_read, rows_used : rows with a date; those whose value is in the record
     dropped : the others, one entry for each reason that occurs; rows_used and the counts add up
         to rows_read
@@ -45,9 +47,15 @@ class Receipt:
     daily : whether the record gives one value a day
     step_minutes : usual step between rows [min]
     first, last : first and last day with a value, datetime64[D]
-    days, missing_days : days with a value, and days without between first and last
+    days, missing_days : days with a value, and days without between first and last [d]
     partial_days : days of a record finer than daily that have values but too few to count
     checks : findings
+    file_format : name of the format, "plain" for delimited text of no agency
+    station, series : what the file says it holds, "" where it says nothing
+    catchment_area_m2 : of the gauge, as the file gives it [m2], None without
+    flags : {code of quality as printed: rows that carry it}
+    estimated_share : share of the rows used whose code says estimated or affected by ice
+    files : (name, sha256) of each file, where the record was joined from several
     """
 
     file: str
@@ -73,6 +81,13 @@ class Receipt:
     missing_days: int
     partial_days: int
     checks: tuple[Check, ...]
+    file_format: str = "plain"
+    station: str = ""
+    series: str = ""
+    catchment_area_m2: float | None = None
+    flags: dict[str, int] = field(default_factory=dict)
+    estimated_share: float = 0.0
+    files: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True)

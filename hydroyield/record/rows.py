@@ -6,19 +6,20 @@ nothing of the format.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.checks import Check
 
-USED, BLANK, MARKED, NEGATIVE, DUPLICATE = range(5)
+USED, BLANK, MARKED, NEGATIVE, DUPLICATE, REPEATED_HOUR = range(6)
 REASONS = {
     BLANK: "blank",
     MARKED: "mark for missing",
     NEGATIVE: "negative",
     DUPLICATE: "duplicate",
+    REPEATED_HOUR: "hour written twice as clocks went back",
 }
 
 
@@ -29,7 +30,9 @@ class Layout:
     delimiter, decimal_mark, date_format : words such as "semicolon", "comma", "DD.MM.YYYY"
     date_column, value_column : names of the columns
     unit : canonical unit of the values in the file
-    unit_source : "site file", "column header" or "unit row"
+    unit_source : "site file", "column header", "unit row", or "file" where the format says it
+    station, series : what the file says it holds, "" where it says nothing
+    catchment_area_m2 : of the gauge, as the file gives it [m2], None without
     """
 
     delimiter: str
@@ -39,6 +42,9 @@ class Layout:
     value_column: str
     unit: str
     unit_source: str
+    station: str = ""
+    series: str = ""
+    catchment_area_m2: float | None = None
 
 
 @dataclass(frozen=True)
@@ -49,10 +55,12 @@ class Rows:
     seconds : written clock time [s] since midnight of the printed date, 0 to 86400, shape (n,)
     values : as printed [unit of the file], nan where there is none, shape (n,)
     lines : line numbers in the file, shape (n,)
-    reasons : USED, or why a row has no value (BLANK, MARKED), shape (n,)
+    reasons : USED, or why a row has no value (BLANK, MARKED, REPEATED_HOUR), shape (n,)
     factor : value of one unit of the file [m3/s]
     layout : how the file was understood
     checks : findings of the reader
+    flags : codes of quality as printed, "" where there is none, shape (n,); None without
+    doubtful : those codes that say estimated or affected by ice
     """
 
     dates: NDArray[np.datetime64]
@@ -63,9 +71,23 @@ class Rows:
     factor: float
     layout: Layout
     checks: tuple[Check, ...] = ()
+    flags: NDArray[np.str_] | None = None
+    doubtful: frozenset[str] = frozenset()
 
     @property
     def times(self) -> NDArray[np.int64]:
         """Written clock times [s] since 1970-01-01 00:00, shape (n,)."""
         days: NDArray[np.int64] = self.dates.astype(np.int64)
         return days * 86400 + self.seconds
+
+    def select(self, which: slice | NDArray[np.int64] | NDArray[np.bool_]) -> Rows:
+        """Some of the rows, or all in another order."""
+        return replace(
+            self,
+            dates=self.dates[which],
+            seconds=self.seconds[which],
+            values=self.values[which],
+            lines=self.lines[which],
+            reasons=self.reasons[which],
+            flags=None if self.flags is None else self.flags[which],
+        )
