@@ -1,9 +1,9 @@
-"""Makes the discharge records of the demo sites. The rivers are invented, and so is every value.
+"""Makes the records of the demo sites and of the starting site files. Every value is invented.
 
     python demo_sites/make_records.py
 
 writes each record byte for byte as it lies in the repository. A further demo is one more `Demo`
-in `DEMOS`.
+in `DEMOS`; the starting site files share one short record, with a column for each kind of water.
 
 The model is a shot-noise process through linear reservoirs, as in Weiss (1977), Water Resour.
 Res. 13(1): 101-108, cited from memory: wet days come in spells (a Markov chain of two states),
@@ -24,6 +24,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 HERE = Path(__file__).resolve().parent
+STARTING_RECORD = HERE.parent / "site_configs" / "record.csv"
 DAY = datetime.timedelta(days=1)
 SECONDS_PER_DAY = 86400.0
 WARM_UP_DAYS = 1461  # before the record starts, so that the stores forget how they began
@@ -132,6 +133,61 @@ DEMOS = (
 )
 
 
+@dataclass(frozen=True)
+class Stream:
+    """A natural column of the record of the starting site files."""
+
+    seed: int
+    climate: Climate
+    catchment: Catchment
+
+
+@dataclass(frozen=True)
+class Supply:
+    """A pipe that supplies a town: a nearly constant flow.
+
+    mean : [m3/s]
+    season : half the swing over the year, largest in July, as a share of the mean
+    weekend : drop on Saturdays and Sundays, as a share of the mean
+    spread : standard deviation of single days, as a share of the mean
+    """
+
+    seed: int
+    mean: float
+    season: float
+    weekend: float
+    spread: float
+
+
+STARTING_FIRST = datetime.date(2020, 10, 1)
+STARTING_LAST = datetime.date(2023, 9, 30)
+STARTING_RIVER = Stream(
+    seed=2203,
+    climate=Climate(
+        wet_share=(0.56, 0.52, 0.50, 0.46, 0.44, 0.44, 0.45, 0.47, 0.48, 0.54, 0.57, 0.58),
+        wet_spell=0.35,
+        depth=(6.5, 5.9, 5.4, 4.9, 5.0, 5.5, 5.9, 6.2, 6.2, 6.7, 6.9, 7.0),
+        depth_shape=1.25,
+        evaporation=(0.4, 0.6, 1.1, 1.9, 2.7, 3.1, 3.1, 2.6, 1.7, 0.9, 0.5, 0.3),
+        spread=0.18,
+    ),
+    catchment=Catchment(area=480.0, soil=150.0, stores=((0.42, 1.6), (0.36, 16.0), (0.22, 120.0))),
+)
+STARTING_STREAM = Stream(
+    seed=2204,
+    climate=Climate(
+        wet_share=(0.62, 0.58, 0.57, 0.52, 0.50, 0.50, 0.52, 0.54, 0.55, 0.60, 0.62, 0.63),
+        wet_spell=0.3,
+        depth=(8.0, 7.2, 6.8, 6.0, 6.0, 6.4, 6.8, 7.2, 7.4, 8.0, 8.2, 8.4),
+        depth_shape=1.25,
+        evaporation=(0.3, 0.5, 0.9, 1.6, 2.2, 2.6, 2.6, 2.2, 1.4, 0.7, 0.4, 0.2),
+        spread=0.18,
+    ),
+    catchment=Catchment(area=9.0, soil=110.0, stores=((0.52, 0.9), (0.28, 10.0), (0.20, 90.0))),
+)
+STARTING_PIPE = Supply(seed=2205, mean=0.282, season=0.15, weekend=0.05, spread=0.03)
+
+
 def uniforms(seed: int) -> Iterator[float]:
     """Random numbers between 0 and 1, neither included.
 
@@ -156,8 +212,8 @@ def rainfall(days: list[datetime.date], climate: Climate, draw: Iterator[float])
     mean_of_shape = math.gamma(1 + climate.depth_shape)
     for k, day in enumerate(days):
         if day.day == 1:
-            news = sum(next(draw) for _ in range(12)) - 6  # close to standard normal
-            weather = WEATHER_MEMORY * weather + math.sqrt(1 - WEATHER_MEMORY**2) * news
+            news = math.sqrt(1 - WEATHER_MEMORY**2) * standard_normal(draw)
+            weather = WEATHER_MEMORY * weather + news
         share = climate.wet_share[day.month - 1]
         wet = next(draw) < share + climate.wet_spell * (wet - share)
         size = (-math.log(next(draw))) ** climate.depth_shape / mean_of_shape
@@ -193,16 +249,32 @@ def drained(inflow: Floats, time_constant: float) -> Floats:
     return outflow
 
 
-def discharge(demo: Demo) -> Floats:
+def discharge(water: Demo | Stream, first: datetime.date, last: datetime.date) -> Floats:
     """Daily mean discharge from the first to the last day [m3/s], gaps not yet made."""
-    days = days_between(demo.first - WARM_UP_DAYS * DAY, demo.last)
-    rain = rainfall(days, demo.climate, uniforms(demo.seed))
-    released = runoff(days, rain, demo.climate.evaporation, demo.catchment.soil)
+    days = days_between(first - WARM_UP_DAYS * DAY, last)
+    rain = rainfall(days, water.climate, uniforms(water.seed))
+    released = runoff(days, rain, water.climate.evaporation, water.catchment.soil)
     depth = sum(
-        (drained(share * released, time) for share, time in demo.catchment.stores),
+        (drained(share * released, time) for share, time in water.catchment.stores),
         np.zeros(len(days)),
     )
-    return depth[WARM_UP_DAYS:] * demo.catchment.area * 1000 / SECONDS_PER_DAY
+    return depth[WARM_UP_DAYS:] * water.catchment.area * 1000 / SECONDS_PER_DAY
+
+
+def standard_normal(draw: Iterator[float]) -> float:
+    """A number that is close to standard normal."""
+    return sum(next(draw) for _ in range(12)) - 6
+
+
+def supplied(supply: Supply, days: list[datetime.date]) -> Floats:
+    """Daily mean flow of a supply [m3/s], shape (n,)."""
+    draw = uniforms(supply.seed)
+    flow = np.zeros(len(days))
+    for k, day in enumerate(days):
+        season = supply.season * math.cos(2 * math.pi * (day.timetuple().tm_yday - 196) / 365.25)
+        weekend = supply.weekend if day.weekday() >= 5 else 0.0
+        flow[k] = supply.mean * (1 + season - weekend + supply.spread * standard_normal(draw))
+    return flow
 
 
 def three_digits(value: float) -> str:
@@ -217,7 +289,7 @@ def record_text(demo: Demo) -> str:
     days = days_between(demo.first, demo.last)
     rows = [
         f"{day.isoformat()},{'' if day in blank else three_digits(value)}"
-        for day, value in zip(days, discharge(demo), strict=True)
+        for day, value in zip(days, discharge(demo, demo.first, demo.last), strict=True)
     ]
     comments = [
         f"# {demo.gauge}, daily mean discharge. The river is invented, and so are all values:",
@@ -226,10 +298,28 @@ def record_text(demo: Demo) -> str:
     return "\n".join([*comments, "date,discharge_m3s", *rows]) + "\n"
 
 
+def starting_record_text() -> str:
+    """The record beside the starting site files: a river, a hill stream and a pipe."""
+    days = days_between(STARTING_FIRST, STARTING_LAST)
+    river = discharge(STARTING_RIVER, STARTING_FIRST, STARTING_LAST)
+    stream = discharge(STARTING_STREAM, STARTING_FIRST, STARTING_LAST)
+    pipe = supplied(STARTING_PIPE, days)
+    rows = [
+        ",".join([day.isoformat(), *map(three_digits, values)])
+        for day, *values in zip(days, river, stream, pipe, strict=True)
+    ]
+    comments = [
+        "# Invented, all of it: no such river, stream or pipe exists. Daily mean discharge, to try",
+        "# the starting site files with. Put a record of your own in its place.",
+    ]
+    return "\n".join([*comments, "date,river_m3s,stream_m3s,pipe_m3s", *rows]) + "\n"
+
+
 def main() -> None:
     """Write all records."""
     for demo in DEMOS:
         demo.path.write_bytes(record_text(demo).encode("ascii"))
+    STARTING_RECORD.write_bytes(starting_record_text().encode("ascii"))
 
 
 if __name__ == "__main__":

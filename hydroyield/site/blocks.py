@@ -15,10 +15,12 @@ from pydantic import (
     BaseModel,
     ConfigDict,
     Field,
+    GetJsonSchemaHandler,
     ModelWrapValidatorHandler,
     ValidationError,
     model_validator,
 )
+from pydantic_core import CoreSchema
 
 from hydroyield.site.faults import Finding, closest, findings_of, flow, refuse, shown
 from hydroyield.site.fields import Text
@@ -32,9 +34,14 @@ class Block(BaseModel):
 
     example: ClassVar[dict[str, Any]] = {}
     not_supported: ClassVar[dict[str, str]] = {}  # key -> what to do instead
+    exactly_one_of: ClassVar[tuple[str, ...]] = ()  # keys that stand for each other
+    at_least_one_of: ClassVar[tuple[str, ...]] = ()  # keys of which any will do
 
     source: Text | None = Field(
-        default=None, description="Where the values of this block come from, in free text."
+        default=None,
+        description="Where the values of this block come from, in free text; the block is shown "
+        "as an assumption if left out.",
+        examples=["survey of April 2024"],
     )
 
     @classmethod
@@ -49,13 +56,27 @@ class Block(BaseModel):
         return ()
 
     @classmethod
-    def exactly_one(cls, keys: tuple[str, ...], named: AbstractSet[str]) -> Iterable[Finding]:
-        """The finding that not exactly one of several keys is given, if so."""
+    def _not_exactly_one(cls, named: AbstractSet[str]) -> Iterable[Finding]:
+        """The finding that not exactly one of the keys that stand for each other is given."""
+        keys = cls.exactly_one_of
         given = [key for key in keys if key in named]
-        if not given and named <= cls.model_fields.keys():  # an unknown key stands for one of them
+        # an unknown key stands for one of them
+        if keys and not given and named <= cls.model_fields.keys():
             yield (), f"needs one of {', '.join(keys)}; write for example {flow(cls.example)}"
         for key in given[1:]:
             yield (key,), f"'{key}' and '{given[0]}' exclude each other; keep one of them"
+
+    @classmethod
+    def __get_pydantic_json_schema__(
+        cls, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        """The schema of the block, with the keys of which one is needed."""
+        block = handler.resolve_ref_schema(handler(schema))
+        if cls.exactly_one_of:
+            block["oneOf"] = [{"required": [key]} for key in cls.exactly_one_of]
+        if cls.at_least_one_of:
+            block["anyOf"] = [{"required": [key]} for key in cls.at_least_one_of]
+        return block
 
     def values_fit_together(self) -> Iterable[Finding]:
         """Findings about values of the finished block that contradict each other."""
@@ -99,6 +120,7 @@ class Block(BaseModel):
         for key, field in cls.model_fields.items():
             if field.is_required() and key not in named and not stood_for:
                 yield (key,), f"is missing; write {key}: {flow((field.examples or ['...'])[0])}"
+        yield from cls._not_exactly_one(named)
         yield from cls.keys_fit_together(named, written)
 
     @classmethod

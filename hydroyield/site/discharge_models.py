@@ -91,13 +91,19 @@ class Record(Block):
         default=None,
         description="Unit of the values: "
         + ", ".join(RECORD_UNITS)
-        + ". Needed unless the file states it; mm/d and mm/h need transfer with gauge_area.",
+        + "; mm/d and mm/h need transfer with gauge_area. Read from the file, which must then "
+        "state it, if left out.",
+        examples=["m3/s"],
     )
     date_column: Text | None = Field(
-        default=None, description="Name of the column of dates; found by itself if left out."
+        default=None,
+        description="Name of the column of dates; found by itself if left out.",
+        examples=["date"],
     )
     value_column: Text | None = Field(
-        default=None, description="Name of the column of discharges; found by itself if left out."
+        default=None,
+        description="Name of the column of discharges; found by itself if left out.",
+        examples=["discharge"],
     )
     missing: Annotated[
         tuple[str, ...],
@@ -106,17 +112,20 @@ class Record(Block):
     ] = Field(
         default=(),
         description="Marks in the file that mean 'no value', besides those of its format: "
-        "a list of numbers or text.",
+        "a list of numbers or text; none if left out.",
+        examples=[[-999, "no data"]],
     )
     date_order: Annotated[DateOrder, Choice(get_args(DateOrder))] | None = Field(
         default=None,
         description="Order of day and month in dates such as 03/04/2001: day_first or "
-        "month_first. Needed only where the file leaves it open.",
+        "month_first; found from the file, and asked for where it stays open, if left out.",
+        examples=["day_first"],
     )
     decimal_mark: Annotated[DecimalMark, Choice(get_args(DecimalMark))] | None = Field(
         default=None,
-        description="Decimal mark of the values: point or comma. Needed only where the file "
-        "leaves it open.",
+        description="Decimal mark of the values: point or comma; found from the file, and "
+        "asked for where it stays open, if left out.",
+        examples=["point"],
     )
 
 
@@ -140,7 +149,7 @@ class Transfer(Block):
         description="Catchment area at the intake of the site [km2].", examples=["287 km2"]
     )
     exponent: Annotated[float, Quantity(NUMBER)] = Field(
-        default=1.0, description="Exponent of the area ratio [-]; 1.0 if left out."
+        default=1.0, description="Exponent of the area ratio [-]; 1.0 if left out.", examples=[1.0]
     )
 
 
@@ -157,7 +166,9 @@ class Discharge(Block):
     )
     year_start_month: Annotated[int, Whole(1, 12)] = Field(
         default=10,
-        description="Month in which the hydrological year starts, 1 to 12; 10 if left out.",
+        description="Month in which the hydrological year starts, 1 to 12; 10 (October) if left "
+        "out.",
+        examples=[10],
     )
     minimum_month_coverage: Annotated[
         float, Quantity(SHARE, above=0, at_most=1, example="90 %")
@@ -165,11 +176,13 @@ class Discharge(Block):
         default=0.9,
         description="Share of the days of each month that must have a value for the year to be "
         "used [share or %]; 90 % if left out.",
+        examples=["90 %"],
     )
     transfer: Transfer | None = Field(
         default=None,
         description="How to move the record from the gauge to the site; the record counts as one "
         "of the site itself if left out.",
+        examples=[Transfer.example],
     )
 
     @classmethod

@@ -98,4 +98,4 @@ def flow(value: Any) -> str:
         return "{" + ", ".join(f"{key}: {flow(item)}" for key, item in value.items()) + "}"
     if isinstance(value, Sequence) and not isinstance(value, str):
         return "[" + ", ".join(flow(item) for item in value) + "]"
-    return str(value)
+    return str(value).lower() if isinstance(value, bool) else str(value)

@@ -12,16 +12,23 @@ import math
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from fractions import Fraction
 from numbers import Integral, Real
 from typing import Annotated, Any
 
-from pydantic import BeforeValidator, GetCoreSchemaHandler, GetJsonSchemaHandler
+from pydantic import (
+    BeforeValidator,
+    GetCoreSchemaHandler,
+    GetJsonSchemaHandler,
+    WithJsonSchema,
+)
 from pydantic_core import CoreSchema, core_schema
 
 from hydroyield.quantities import ANGLE, NUMBER, PERCENT, SHARE, Dimension, parse
 from hydroyield.site.faults import closest, shown
 
 _WHOLE = re.compile(r"[+-]?\d{1,9}", re.ASCII)
+_SI = (Fraction(1), Fraction(0))  # the scale of a unit that is one of the SI
 _CONTROL = re.compile(r"[\x00-\x08\x0b-\x1f\x7f]")
 NUMBER_OR_TEXT = [{"type": "number"}, {"type": "string"}]
 
@@ -131,7 +138,7 @@ class Quantity:
 def _si_unit(dimension: Dimension) -> str:
     if dimension is PERCENT:
         return "%"
-    return next((unit for unit, scale in dimension.units.items() if scale[0] == 1 and scale[1] == 0), "")
+    return next((unit for unit, scale in dimension.units.items() if scale == _SI), "")
 
 
 @dataclass(frozen=True)
@@ -179,6 +186,11 @@ class Whole:
     ) -> CoreSchema:
         return core_schema.no_info_before_validator_function(self.read, handler(source))
 
+    def __get_pydantic_json_schema__(
+        self, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        return {"type": "integer", "minimum": self.least, "maximum": self.most}
+
 
 @dataclass(frozen=True)
 class ListOf:
@@ -207,6 +219,11 @@ class ListOf:
     ) -> CoreSchema:
         return core_schema.no_info_before_validator_function(self.read, handler(source))
 
+    def __get_pydantic_json_schema__(
+        self, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        return {**handler(schema), **({"minItems": self.least} if self.least else {})}
+
 
 def _read_text(value: object) -> str:
     text = scalar_text(value, "text", "a word or a line of text")
@@ -222,5 +239,6 @@ def _read_switch(value: object) -> bool:
     return text == "true"
 
 
-Text = Annotated[str, BeforeValidator(_read_text)]
+# a number may stand for itself as text, such as the name of a column
+Text = Annotated[str, BeforeValidator(_read_text), WithJsonSchema({"type": ["string", "number"]})]
 Switch = Annotated[bool, BeforeValidator(_read_switch)]

@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
-from collections.abc import Set as AbstractSet
+from collections.abc import Iterable
 from typing import Annotated, Any, ClassVar, Literal, get_args
 
 from pydantic import Field
@@ -121,46 +120,51 @@ class Headwater(Block):
     """The level above the turbines: exactly one of level, table and weir."""
 
     example: ClassVar[dict[str, Any]] = {"level": "101.2 m"}
+    exactly_one_of: ClassVar[tuple[str, ...]] = ("level", "table", "weir")
 
-    level: Level | None = Field(default=None, description="Constant headwater level [m].")
+    level: Level | None = Field(
+        default=None, description="Constant headwater level [m].", examples=["101.2 m"]
+    )
     table: HeadwaterTable | None = Field(
-        default=None, description="Pairs of river discharge [m3/s] and headwater level [m]."
+        default=None,
+        description="Pairs of river discharge [m3/s] and headwater level [m], linear between "
+        "them; the last segment is extended.",
+        examples=[[["0 m3/s", "101.0 m"], ["50 m3/s", "101.4 m"]]],
     )
     weir: Weir | None = Field(
-        default=None, description="A weir that all untaken water passes over."
+        default=None,
+        description="A weir that all untaken water passes over.",
+        examples=[Weir.example],
     )
-
-    @classmethod
-    def keys_fit_together(
-        cls, named: AbstractSet[str], written: Mapping[str, Any]
-    ) -> Iterable[Finding]:
-        """Exactly one description of the level."""
-        return cls.exactly_one(("level", "table", "weir"), named)
 
 
 class Tailwater(Block):
     """The level below the turbines: exactly one of level, table, rating and channel."""
 
     example: ClassVar[dict[str, Any]] = {"level": "97.9 m"}
+    exactly_one_of: ClassVar[tuple[str, ...]] = ("level", "table", "rating", "channel")
 
-    level: Level | None = Field(default=None, description="Constant tailwater level [m].")
-    table: TailwaterTable | None = Field(
-        default=None, description="Pairs of discharge [m3/s] and tailwater level [m], not falling."
+    level: Level | None = Field(
+        default=None, description="Constant tailwater level [m].", examples=["97.9 m"]
     )
-    rating: Rating | None = Field(default=None, description="A rating formula.")
-    channel: Channel | None = Field(default=None, description="A channel in uniform flow.")
+    table: TailwaterTable | None = Field(
+        default=None,
+        description="Pairs of discharge [m3/s] and tailwater level [m], not falling, linear "
+        "between them; the last segment is extended.",
+        examples=[[["0 m3/s", "97.9 m"], ["20 m3/s", "98.35 m"]]],
+    )
+    rating: Rating | None = Field(
+        default=None, description="A rating formula.", examples=[Rating.example]
+    )
+    channel: Channel | None = Field(
+        default=None, description="A channel in uniform flow.", examples=[Channel.example]
+    )
     follows: Annotated[Follows, Choice(get_args(Follows))] = Field(
         default="river",
         description="The discharge that sets the level: river, or turbine for a separate "
         "tailrace; river if left out.",
+        examples=["river"],
     )
-
-    @classmethod
-    def keys_fit_together(
-        cls, named: AbstractSet[str], written: Mapping[str, Any]
-    ) -> Iterable[Finding]:
-        """Exactly one description of the level."""
-        return cls.exactly_one(("level", "table", "rating", "channel"), named)
 
 
 class Head(Block):
@@ -181,4 +185,5 @@ class Head(Block):
         default=None,
         description="Net head below which the plant does not run [m]; any net head above 0 will "
         "do if left out.",
+        examples=["1.0 m"],
     )

@@ -30,15 +30,21 @@ class Site(Block):
     name: Text = Field(description="Name of the site.", examples=["Larkbeck Weir"])
     latitude: Annotated[float, Quantity(ANGLE, at_least=-90, at_most=90)] | None = Field(
         default=None,
-        description="Latitude [degrees], north positive; gives gravity, 9.81 m/s2 if left out.",
+        description="Latitude [degrees], north positive, which gives gravity; gravity is "
+        "9.81 m/s2 if left out.",
+        examples=[54.2],
     )
     altitude: Annotated[float, Quantity(LENGTH, at_least=-500, at_most=6000)] | None = Field(
-        default=None, description="Altitude above sea level [m]; gives gravity, 0 m if left out."
+        default=None,
+        description="Altitude above sea level [m], a part of gravity; 0 m if left out.",
+        examples=["62 m"],
     )
     water_temperature: Annotated[float, Quantity(TEMPERATURE, at_least=0, at_most=40)] | None = (
         Field(
             default=None,
-            description="Mean water temperature [degC]; gives density, 1000 kg/m3 if left out.",
+            description="Mean water temperature [degC], which gives density; density is "
+            "1000 kg/m3 if left out.",
+            examples=["9 degC"],
         )
     )
 
@@ -65,23 +71,31 @@ class SiteFile(Block):
     environmental_flow: Annotated[tuple[Rule, ...], ListOf(flow(ConstantRule.example))] = Field(
         default=(),
         description="Rules for the water that stays in the river; the largest applies, and never "
-        "more than the inflow. None if left out.",
+        "more than the inflow. All water is offered to the turbines if left out.",
+        examples=[[ConstantRule.example]],
     )
     abstractions: Annotated[tuple[Abstraction, ...], ListOf(flow(Abstraction.example))] = Field(
-        default=(), description="Other water that does not reach the turbines. None if left out."
+        default=(),
+        description="Other water that does not reach the turbines; none if left out.",
+        examples=[[Abstraction.example]],
     )
     head: Head = Field(description="Levels above and below the turbines.", examples=[Head.example])
     waterway: Annotated[tuple[WaterwayLoss, ...], ListOf(flow(WaterwayLoss.example))] = Field(
         default=(),
-        description="Losses between headwater and turbines, which add up. None if left out.",
+        description="Losses between headwater and turbines, which add up; no head is lost if "
+        "left out.",
+        examples=[[WaterwayLoss.example]],
     )
     turbines: Annotated[tuple[TurbineGroup, ...], ListOf(flow(TurbineGroup.example), 1)] = Field(
         description="Groups of equal units, at least one.", examples=[[TurbineGroup.example]]
     )
     electrical: Electrical = Field(
         default_factory=Electrical,
-        description="From the turbine shaft to the grid. Nothing is lost or limited if left out.",
+        description="From the turbine shaft to the grid; nothing is lost or limited if left out.",
+        examples=[Electrical.example],
     )
     operation: Operation = Field(
-        default_factory=Operation, description="How the plant is run. Always on if left out."
+        default_factory=Operation,
+        description="How the plant is run; always on if left out.",
+        examples=[Operation.example],
     )

@@ -79,6 +79,8 @@ class TurbineGroup(Block):
         "rated_discharge": "6.2 m3/s",
     }
 
+    at_least_one_of: ClassVar[tuple[str, ...]] = ("unit_capacity", "rated_discharge")
+
     count: Annotated[int, Whole(1, MOST_UNITS)] = Field(
         description="Number of equal units.", examples=[2]
     )
@@ -88,16 +90,21 @@ class TurbineGroup(Block):
     )
     unit_capacity: Annotated[float, Quantity(POWER, above=0)] | None = Field(
         default=None,
-        description="Capacity of one unit at the generator terminals [kW]; derived from "
-        "rated_discharge if left out.",
+        description="Capacity of one unit at the generator terminals [kW]; output at rated "
+        "discharge and head if left out.",
+        examples=["125 kW"],
     )
     rated_discharge: Annotated[float, Quantity(DISCHARGE, above=0)] | None = Field(
         default=None,
         description="Discharge of one unit, fully open at rated head [m3/s]; derived from "
         "unit_capacity if left out.",
+        examples=["6.2 m3/s"],
     )
     rated_head: Annotated[float, Quantity(LENGTH, above=0)] | None = Field(
-        default=None, description="Net head for which the unit is built [m]; derived if left out."
+        default=None,
+        description="Net head for which the unit is built [m]; that at the smallest river "
+        "discharge at which all units are fully open if left out.",
+        examples=["2.65 m"],
     )
     minimum_discharge: (
         Annotated[
@@ -114,16 +121,20 @@ class TurbineGroup(Block):
         default=None,
         description="Least discharge of a running unit, of full discharge at the head of the "
         "moment [share or %]; by type if left out.",
+        examples=["20 %"],
     )
     efficiency: EfficiencyCurve | None = Field(
         default=None,
         description="Pairs of share of full discharge at the head of the moment [share or %] and "
-        "turbine efficiency [share or %], or typical; typical of the type if left out.",
+        "turbine efficiency [share or %], or the word typical; typical of the type if left out.",
+        examples=[[[0.2, 0.71], [0.6, 0.9], [1.0, 0.89]]],
     )
     axis_level: Annotated[float, Quantity(LENGTH)] | None = Field(
         default=None,
         description="Level of the turbine axis [m], for impulse machines: the head ends there, "
-        "and the unit stands when the tailwater is higher.",
+        "and the unit stands when the tailwater is higher; the head ends at the tailwater if left "
+        "out.",
+        examples=["98.1 m"],
     )
 
     @classmethod
@@ -131,7 +142,7 @@ class TurbineGroup(Block):
         cls, named: AbstractSet[str], written: Mapping[str, Any]
     ) -> Iterable[Finding]:
         """A size is needed, and a machine of unknown type has no typical values."""
-        if not {"unit_capacity", "rated_discharge"} & named:
+        if not named & set(cls.at_least_one_of):
             yield (
                 (),
                 "the size of the unit is missing; write rated_discharge: 6.2 m3/s or "
@@ -165,19 +176,30 @@ class Electrical(Block):
     example: ClassVar[dict[str, Any]] = {"generator_efficiency": "94 %"}
 
     drive_efficiency: Efficiency | None = Field(
-        default=None, description="Efficiency of gearbox or belt [share or %]."
+        default=None,
+        description="Efficiency of gearbox or belt [share or %]; no loss if left out.",
+        examples=["98 %"],
     )
     generator_efficiency: Annotated[Efficiency, BeforeValidator(_no_load_curve)] | None = Field(
-        default=None, description="Efficiency of the generator [share or %]."
+        default=None,
+        description="Efficiency of the generator [share or %]; no loss if left out.",
+        examples=["94 %"],
     )
     transformer_efficiency: Efficiency | None = Field(
-        default=None, description="Efficiency of the transformer [share or %]."
+        default=None,
+        description="Efficiency of the transformer [share or %]; no loss if left out.",
+        examples=["98.5 %"],
     )
     own_use: Annotated[float, Quantity(POWER, at_least=0)] | None = Field(
-        default=None, description="Power that the plant itself uses while any unit runs [kW]."
+        default=None,
+        description="Power that the plant itself uses while any unit runs [kW]; none if left out.",
+        examples=["1.5 kW"],
     )
     export_limit: Annotated[float, Quantity(POWER, above=0)] | None = Field(
-        default=None, description="The most that may be fed into the grid, after all losses [kW]."
+        default=None,
+        description="The most that may be fed into the grid, after all losses [kW]; no limit if "
+        "left out.",
+        examples=["220 kW"],
     )
 
 
@@ -192,5 +214,8 @@ class Operation(Block):
     }
 
     shutdown_above: Annotated[float, Quantity(DISCHARGE, above=0)] | None = Field(
-        default=None, description="River discharge above which the plant stands [m3/s]."
+        default=None,
+        description="River discharge above which the plant stands [m3/s]; it runs in any flood if "
+        "left out.",
+        examples=["90 m3/s"],
     )

@@ -45,6 +45,7 @@ class MonthlyRule(Block):
     ] = Field(
         description="Discharges that stay in the river [m3/s]: 12 values, January first.",
         examples=[[0.6] * MONTHS_PER_YEAR],
+        json_schema_extra={"minItems": MONTHS_PER_YEAR, "maxItems": MONTHS_PER_YEAR},
     )
 
 
@@ -155,15 +156,19 @@ class Abstraction(Block):
         description="Discharge taken [m3/s].", examples=["0.15 m3/s"]
     )
     months: Months | None = Field(
-        default=None, description="Months in which it is taken, 1 to 12; all year if left out."
+        default=None,
+        description="Months in which it is taken, 1 to 12; all year if left out.",
+        examples=[[3, 4, 5]],
     )
     counts_as_environmental_flow: Switch = Field(
         default=False,
         description="Whether the water counts towards the environmental flow, as that of a fish "
         "pass may: true or false; false if left out.",
+        examples=[True],
     )
     returns: Switch = Field(
         default=True,
         description="Whether the water is back in the river at the tailwater: true or false; true "
         "if left out.",
+        examples=[False],
     )
