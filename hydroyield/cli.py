@@ -53,12 +53,19 @@ def estimate(
         typer.Option("--out", metavar="FOLDER", help="Folder to write; needed without --json."),
     ] = None,
     as_json: JsonOption = False,
+    quiet: Annotated[
+        bool, typer.Option("--quiet", help="Print nothing but faults; write the folder.")
+    ] = False,
 ) -> None:
-    """Annual energy and capacity factor of a site, with tables and checks."""
+    """Annual energy and capacity factor of a site: page, figures, tables and checks.
+
+    With --json no page and no figures are made; FOLDER then gets the tables alone.
+    """
     from hydroyield import jobs
-    from hydroyield.report.files import result_text, write_estimate
+    from hydroyield.report.files import result_text, steps_of_page, write_page, write_tables
     from hydroyield.report.folder import check_folder, write_folder
-    from hydroyield.report.summary import summary
+    from hydroyield.report.progress import progress
+    from hydroyield.report.summary import print_summary
     from hydroyield.site.assembly import read_site
 
     if out is None and not as_json:
@@ -67,12 +74,54 @@ def estimate(
         check_folder(out)
     found = jobs.estimate(read_site(site))
     if out is not None:
-        write_folder(out, lambda folder: write_estimate(found, folder))
+        place = out
+        with progress(0 if as_json else steps_of_page(), quiet=quiet or as_json) as steps:
+
+            def fill(folder: Path) -> None:
+                write_tables(found, folder)
+                if not as_json:
+                    write_page(found, folder, steps)
+
+            write_folder(place, fill)
     if as_json:
         sys.stdout.write(result_text(found))
-    else:
-        typer.echo(summary(found))
-        typer.echo(f"\nWritten to {out}")
+    elif out is not None and not quiet:
+        print_summary(found)
+        typer.echo(f"\nWritten to {out}; open {out / 'report.html'}")
+
+
+@app.command()
+def new(
+    folder: Annotated[Path, typer.Argument(metavar="FOLDER", help="The folder to make.")],
+    layout: Annotated[
+        str,
+        typer.Option(
+            "--layout",
+            metavar="NAME",
+            help="low-head-weir, high-head-diversion, mill-or-canal-drop or pipe-outfall.",
+        ),
+    ],
+) -> None:
+    """Start a site: a commented site file, an invented record to try it, a schema for editors."""
+    from hydroyield.report.folder import write_new_folder
+    from hydroyield.site.starting import SITE_FILE, starting_files
+
+    files = starting_files(layout)
+
+    def fill(place: Path) -> None:
+        for name, text in files.items():
+            (place / name).write_text(text, "utf-8")
+
+    write_new_folder(folder, fill)
+    typer.echo(f"Written to {folder}. Put your record there, and edit {folder / SITE_FILE}.")
+
+
+@app.command()
+def schema() -> None:
+    """Print the JSON Schema of the site file, with which editors complete and underline."""
+    from hydroyield.site.schema import schema_text
+
+    sys.stdout.write(schema_text())
 
 
 @app.command()

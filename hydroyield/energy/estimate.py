@@ -18,7 +18,6 @@ from hydroyield.river import (
     Cells,
     characteristic_discharge,
     condense,
-    exceedance_percent,
     quantile,
     usable_years,
 )
@@ -171,7 +170,7 @@ class Estimate:
         """
         import pandas as pd
 
-        river = self._curve_discharges()
+        exceeded, river = self._curve_discharges()
         seasons = np.arange(self.scheme.rules.season_count)
         run = self.scheme.operate(np.tile(river, seasons.size), np.repeat(seasons, river.size))
         columns = {
@@ -192,9 +191,6 @@ class Estimate:
                 (month, {name: values[season] for name, values in by_season.items()})
                 for month, season in enumerate(season_of_month, start=1)
             ]
-        exceedance = np.asarray(exceedance_percent(self.scheme.valid_discharge))
-        order = np.argsort(self.scheme.valid_discharge)
-        exceeded = np.interp(river, self.scheme.valid_discharge[order], exceedance[order])
         frames = [
             pd.DataFrame(
                 {
@@ -208,10 +204,20 @@ class Estimate:
         ]
         return pd.concat(frames, ignore_index=True)
 
-    def _curve_discharges(self) -> Floats:
-        """(r,) distinct river discharges at even steps of exceedance, falling [m3/s]."""
-        steps = np.linspace(0, 100, CURVE_STEPS + 1)
-        return np.unique(quantile(self.scheme.valid_discharge, steps))[::-1]
+    def _curve_discharges(self) -> tuple[Floats, Floats]:
+        """(r,) exceedances at about even steps [%], and the river discharges there, falling [m3/s].
+
+        A discharge that lasts for several steps stands once, with the exceedance of its last day.
+        """
+        values = self.scheme.valid_discharge
+        ends = 100 * np.array([1, values.size]) / (values.size + 1)
+        steps = np.clip(np.linspace(0, 100, CURVE_STEPS + 1), *ends)
+        river = quantile(values, steps)
+        last = np.append(np.diff(river) < 0, True)
+        river, steps = river[last], steps[last]
+        recorded = np.isin(river, values)
+        lasting = 100 * (values.size - np.searchsorted(np.sort(values), river)) / (values.size + 1)
+        return np.where(recorded, lasting, steps), river
 
 
 def estimate_energy(scheme: Scheme) -> Estimate:

@@ -29,6 +29,22 @@ def write_folder(folder: Path, fill: Callable[[Path], None]) -> None:
     Raises OutputError where the folder must not be replaced or cannot be written.
     """
     check_folder(folder)
+    _put_together(folder, fill, with_manifest=True)
+
+
+def write_new_folder(folder: Path, fill: Callable[[Path], None]) -> None:
+    """Write a folder that is the user's from then on: never replaced, and without a manifest.
+
+    Raises OutputError where the folder exists and is not empty, or cannot be written.
+    """
+    if folder.is_symlink() or (folder.exists() and not folder.is_dir()):
+        raise _refused(folder, f"is a file, not a folder; {_ANOTHER}")
+    if folder.is_dir() and any(folder.iterdir()):
+        raise _refused(folder, f"exists and is not empty; {_ANOTHER}")
+    _put_together(folder, fill, with_manifest=False)
+
+
+def _put_together(folder: Path, fill: Callable[[Path], None], *, with_manifest: bool) -> None:
     try:
         folder.parent.mkdir(parents=True, exist_ok=True)
         staging = Path(tempfile.mkdtemp(prefix=f".{folder.name}-", dir=folder.parent))
@@ -36,7 +52,8 @@ def write_folder(folder: Path, fill: Callable[[Path], None]) -> None:
         raise _unwritable(folder, error) from None
     try:
         fill(staging)
-        _write_manifest(staging)
+        if with_manifest:
+            _write_manifest(staging)
         staging.chmod(0o755)
         _put_in_place(staging, folder)
     except OSError as error:

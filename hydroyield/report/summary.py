@@ -3,11 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import TYPE_CHECKING
 
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import rounded
+from hydroyield.report import words
 from hydroyield.report.result import CAUTION
-from hydroyield.river.years import MONTH_NAMES, span
+from hydroyield.river.years import MONTH_NAMES
+
+if TYPE_CHECKING:
+    from rich.console import Console, RenderableType
+    from rich.table import Table
+
+WIDTH_WITHOUT_TERMINAL = 100  # columns
+STYLE_OF_OUTCOME = {"warn": "yellow", "fail": "bold red"}
 
 LEDGER_NAMES = {
     "gross": "all the water, at the reference head",
@@ -29,94 +38,140 @@ LEDGER_NAMES = {
 }
 
 
-def summary(estimate: SiteEstimate) -> str:
-    """The summary as text of less than 100 columns."""
-    return "\n".join(
-        [
-            *_headline(estimate),
-            "",
-            *_months(estimate),
-            "",
-            *_ledger(estimate),
-            "",
-            *_checks(estimate),
-            "",
-            CAUTION,
-        ]
+def print_summary(estimate: SiteEstimate, console: Console | None = None) -> None:
+    """Print the summary: in colour where a terminal is, plain where none is."""
+    console = console or _console()
+    for part in summary(estimate):
+        console.print(part)
+
+
+def _console() -> Console:
+    from rich.console import Console
+
+    console = Console(highlight=False)
+    return (
+        console if console.is_terminal else Console(highlight=False, width=WIDTH_WITHOUT_TERMINAL)
     )
 
 
-def _headline(estimate: SiteEstimate) -> Iterator[str]:
-    years, start = estimate.cells.years, estimate.scheme.year_start_month
-    energies = estimate.yearly_energy_mwh
-    driest, wettest = (pick(energies, key=energies.__getitem__) for pick in (min, max))
-    left_out = len(estimate.years_left_out)
-    record = estimate.record
-    yield estimate.site.name
-    yield "-" * len(estimate.site.name)
-    yield _row("Mean annual energy", f"{rounded(estimate.mean_annual_energy_mwh)} MWh")
-    yield _row("Capacity factor", f"{estimate.capacity_factor:.0%}")
-    yield _row(
-        "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, " + _units(estimate)
+def summary(estimate: SiteEstimate) -> Iterator[RenderableType]:
+    """The parts of the summary. User text is shown as it is, never as markup."""
+    from rich.text import Text
+
+    yield Text(estimate.site.name, style="bold")
+    yield _headline(estimate)
+    yield ""
+    yield _months(estimate)
+    yield ""
+    yield Text(
+        "From gross to net, MWh a year; water valued at a head of "
+        + words.head(estimate.reference_head_m),
+        style="bold",
     )
-    yield _row("Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW")
-    yield _row(
+    yield _ledger(estimate)
+    yield ""
+    yield from _checks(estimate)
+    yield ""
+    yield Text(CAUTION)
+
+
+def _headline(estimate: SiteEstimate) -> Table:
+    table = _plain_table("bold", "")
+    for name, value in _facts(estimate):
+        table.add_row(name, _text(value))
+    return table
+
+
+def _facts(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
+    ranked = words.ranked_years(estimate)
+    (driest, least), (wettest, most) = ranked[0], ranked[-1]
+    record, out = estimate.record, len(estimate.years_left_out)
+    units = " + ".join(f"{g.count} x {g.type}" for g in estimate.scheme.plant.groups)
+    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
+    q = estimate.exceedance_discharge_m3s
+    mean = float(estimate.scheme.valid_discharge.mean())
+    yield "Mean annual energy", words.energy(estimate.mean_annual_energy_mwh)
+    yield "Capacity factor", words.percent(estimate.capacity_factor)
+    yield "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, {units}"
+    yield "Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW"
+    yield (
         "Years",
-        f"{len(years)} used, {span(int(years[0]), start)} to {span(int(years[-1]), start)}"
-        + (f"; {left_out} left out" if left_out else ""),
+        f"{len(estimate.years_used)} used, {first} to {last}"
+        + (f"; {out} left out" if out else ""),
     )
-    yield _row(
-        "Range of years",
-        f"{rounded(energies[driest])} MWh ({span(int(driest), start)}) to "
-        f"{rounded(energies[wettest])} MWh ({span(int(wettest), start)})",
+    yield (
+        "Driest and wettest",
+        f"{words.energy(least)} ({words.year_name(estimate, driest)}), "
+        f"{words.energy(most)} ({words.year_name(estimate, wettest)})",
     )
-    yield _row(
+    yield (
         "Record",
         f"{record.file}, {record.first} to {record.last}, {record.missing_days} days missing",
     )
-    mean = float(estimate.scheme.valid_discharge.mean())
-    q = estimate.exceedance_discharge_m3s
-    yield _row(
+    yield (
         "River at the site",
-        f"mean {rounded(mean)} m3/s, Q50 {rounded(q['50'])}, Q95 {rounded(q['95'])}; "
-        f"kept in it {rounded(estimate.environmental_flow_mean_m3s)}",
+        f"mean {words.discharge(mean)}, Q50 {words.discharge(q['50'])}, "
+        f"Q95 {words.discharge(q['95'])}",
     )
+    yield "Kept in the river", f"{words.discharge(estimate.environmental_flow_mean_m3s)} on average"
 
 
-def _row(name: str, text: str) -> str:
-    return f"{name:<20}{text}"
+def _text(value: str) -> RenderableType:
+    from rich.text import Text
+
+    return Text(value, overflow="fold")
 
 
-def _units(estimate: SiteEstimate) -> str:
-    return " + ".join(f"{g.count} x {g.type}" for g in estimate.scheme.plant.groups)
+def _plain_table(*styles: str) -> Table:
+    from rich.table import Table
+
+    table = Table(box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
+    for style in styles:
+        table.add_column(style=style)
+    return table
 
 
-def _months(estimate: SiteEstimate) -> Iterator[str]:
+def _months(estimate: SiteEstimate) -> Table:
+    from rich.table import Table
+
     means = estimate.monthly_energy_mwh
-    order = [(estimate.scheme.year_start_month - 1 + i) % 12 for i in range(12)]
-    yield "Energy by month, MWh"
-    yield "".join(f"{MONTH_NAMES[m][:3]:>7}" for m in order)
-    yield "".join(f"{rounded(means[m]):>7}" for m in order)
+    start = estimate.scheme.year_start_month - 1
+    order = [(start + i) % 12 for i in range(12)]
+    table = Table(
+        title="Energy by month, MWh", title_justify="left", title_style="bold",
+        box=None, pad_edge=False, padding=(0, 1, 0, 0),
+    )  # fmt: skip
+    for month in order:
+        table.add_column(MONTH_NAMES[month][:3], justify="right", no_wrap=True)
+    table.add_row(*(rounded(means[month]) for month in order))
+    return table
 
 
-def _ledger(estimate: SiteEstimate) -> Iterator[str]:
+def _ledger(estimate: SiteEstimate) -> Table:
+    table = _plain_table("")
+    for _ in range(2):
+        table.add_column(justify="right", no_wrap=True)
     rows = estimate.ledger_mwh
     gross = rows[0][1]
-    yield f"From gross to net, MWh a year; water valued at {estimate.reference_head_m:.2f} m"
-    for step, energy in rows:
-        if energy or step in ("gross", "net"):
-            share = f"{energy / gross:>7.1%}" if gross else ""
-            yield f"{LEDGER_NAMES[step]:<44}{_signed(energy, step):>10}{share}"
+    for step, mwh in rows:
+        total = step in ("gross", "net")
+        if mwh or total:
+            sign = "" if total else ("+" if mwh > 0 else "-")
+            share = f"{100 * mwh / gross:.1f} %" if gross else ""
+            style = "bold" if total else ""
+            table.add_row(LEDGER_NAMES[step], sign + rounded(abs(mwh)), share, style=style)
+    return table
 
 
-def _signed(energy: float, step: str) -> str:
-    sign = "" if step in ("gross", "net") else ("+" if energy > 0 else "-")
-    return sign + rounded(abs(energy))
+def _checks(estimate: SiteEstimate) -> Iterator[RenderableType]:
+    from rich.text import Text
 
-
-def _checks(estimate: SiteEstimate) -> Iterator[str]:
     found = estimate.warnings()
     passed = len(estimate.checks) - len(found)
-    yield f"Checks: {passed} passed, {len(found)} to look at"
+    yield Text(f"Checks: {passed} passed, {len(found)} to look at", style="bold")
+    table = _plain_table("", "")
     for check in found:
-        yield f"{check.outcome}: {check.message}"
+        outcome = Text(check.outcome, style=STYLE_OF_OUTCOME[check.outcome])
+        table.add_row(outcome, _text(check.message))
+    if found:
+        yield table

@@ -1,0 +1,262 @@
+"""The page that an engineer would hand over: one file that opens without a network.
+
+What it says is gathered here as plain data; the template only lays it out and escapes it.
+"""
+
+from __future__ import annotations
+
+import base64
+import datetime
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import hydroyield
+from hydroyield.jobs import SiteEstimate
+from hydroyield.quantities import W_PER_KW, rounded
+from hydroyield.report import words
+from hydroyield.report.result import CAUTION
+from hydroyield.report.summary import LEDGER_NAMES
+from hydroyield.river.years import MONTH_NAMES
+from hydroyield.site.notes import filled_in, left_out, to_derive, without_source
+
+Rows = list[tuple[str, ...]]
+
+METHODS = (
+    (
+        "Duration curve",
+        "All valid days at the site; plotting positions m/(N+1) (Weibull), linear between ranks.",
+    ),
+    (
+        "Energy",
+        "Each day of the record is evaluated by itself. A month's energy is its mean power times "
+        "its hours; a year counts if every month has enough days with a value; means are over the "
+        "years used.",
+    ),
+    (
+        "Water to the turbines",
+        "River discharge less the largest environmental flow rule (never more than the inflow, and "
+        "less what counts towards it) and less all abstractions.",
+    ),
+    (
+        "Head",
+        "Headwater less tailwater, or less the turbine axis, at the discharge of the day, less "
+        "losses k Q^2. Over a weir Q = C L h^1.5; channels by Manning's formula; ratings "
+        "Q = C (h - a)^b (ISO 18320). Density by IAPWS SR6-08(2011), gravity by IEC 60041.",
+    ),
+    (
+        "Machines",
+        "Full discharge grows with the square root of the net head (that of screws is constant). "
+        "Efficiency is read at the share of full discharge, by a monotone cubic through the points "
+        "(Fritsch and Butland 1984). The units share the water so that output is largest; a unit "
+        "runs between its minimum and full discharge and up to its capacity.",
+    ),
+)
+
+
+@dataclass(frozen=True)
+class DrawnFigure:
+    """A figure for the page.
+
+    name, title : as in its `FigureSpec`
+    alt : what it shows, in words with numbers
+    svg : the drawing
+    """
+
+    name: str
+    title: str
+    alt: str
+    svg: str
+
+    @property
+    def data(self) -> str:
+        """The drawing as the data of an image in the page."""
+        return base64.b64encode(self.svg.encode()).decode()
+
+
+def page(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> str:
+    """The page as HTML, self-contained; all user text is escaped."""
+    from jinja2 import Environment, PackageLoader, StrictUndefined
+
+    templates = Environment(
+        loader=PackageLoader("hydroyield.report", "templates"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    return templates.get_template("report.html.j2").render(page_data(estimate, figures))
+
+
+def page_data(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> dict[str, Any]:
+    """Everything that the page shows, as plain data."""
+    return {
+        "name": estimate.site.name,
+        "headline": _headline(estimate),
+        "answer": _answer(estimate),
+        "warnings": [(check.outcome, check.message) for check in estimate.warnings()],
+        "passed": [check.message for check in estimate.checks if check.outcome == "pass"],
+        "basis": _basis(estimate),
+        "turbines": _turbines(estimate),
+        "assumptions": _assumptions(estimate),
+        "sources": words.sources(estimate.site.model),
+        "figures": figures,
+        "years": _years(estimate),
+        "months": [
+            (month, words.energy(mwh).removesuffix(" MWh"))
+            for month, mwh in zip(MONTH_NAMES, estimate.monthly_energy_mwh, strict=True)
+        ],
+        "river": _river(estimate),
+        "ledger": _ledger(estimate),
+        "reference_head": words.head(estimate.reference_head_m),
+        "methods": METHODS,
+        "caution": CAUTION,
+        "provenance": _provenance(estimate),
+    }
+
+
+def _headline(estimate: SiteEstimate) -> Rows:
+    units = " + ".join(f"{g.count} x {g.type}" for g in estimate.scheme.plant.groups)
+    return [
+        ("Mean annual energy", words.energy(estimate.mean_annual_energy_mwh), "net, to the grid"),
+        ("Capacity factor", words.percent(estimate.capacity_factor), "of installed capacity"),
+        ("Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW", units),
+        (
+            "Most delivered",
+            f"{rounded(estimate.maximum_net_power_kw)} kW",
+            "at any river discharge",
+        ),
+    ]
+
+
+def _answer(estimate: SiteEstimate) -> str:
+    ranked = words.ranked_years(estimate)
+    (dry, least), (wet, most) = ranked[0], ranked[-1]
+    full = estimate.mean_annual_energy_mwh * W_PER_KW / estimate.installed_capacity_kw
+    text = (
+        f"In a mean year the plant delivers {words.energy(estimate.mean_annual_energy_mwh)}, as "
+        f"much as {rounded(full)} hours at full capacity. "
+    )
+    if len(ranked) == 1:
+        return text + f"This rests on one year only, {words.year_name(estimate, dry)}."
+    return text + (
+        f"Over the {len(ranked)} years used it ranges from {words.energy(least)} "
+        f"({words.year_name(estimate, dry)}) to {words.energy(most)} "
+        f"({words.year_name(estimate, wet)})."
+    )
+
+
+def _basis(estimate: SiteEstimate) -> Rows:
+    model, record = estimate.site.model, estimate.record
+    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
+    rows: Rows = [
+        ("Record", f"{record.file.rpartition('/')[2]}, {record.first} to {record.last}"),
+        (
+            "Days",
+            f"{record.days} with a value, {record.missing_days} missing; {record.rows_used} of "
+            f"{record.rows_read} rows used",
+        ),
+        ("Unit of the record", f"{record.unit} (from the {record.unit_source})"),
+        ("From gauge to site", words.transfer(model)),
+        ("Years used", f"{len(estimate.years_used)}, {first} to {last}"),
+        *(
+            (f"Left out: {words.year_name(estimate, year)}", reason)
+            for year, reason in estimate.years_left_out.items()
+        ),
+    ]
+    rules = words.environmental_flow(model)
+    title = "Environmental flow" + (", the largest of" if len(rules) > 1 else "")
+    rows.append((title, "; ".join(rules) or "none stated"))
+    rows += [("Abstraction", text) for text in words.abstractions(model)]
+    rows += [
+        ("Headwater", words.headwater(model)),
+        ("Tailwater", words.tailwater(model)),
+        ("Waterway losses", words.waterway(model)),
+        *words.electrical(estimate),
+    ]
+    shutdown = model.operation.shutdown_above
+    rows.append(
+        ("Shutdown", f"above {words.discharge(shutdown)} in the river" if shutdown else "none")
+    )
+    return rows
+
+
+def _turbines(estimate: SiteEstimate) -> Rows:
+    derived = to_derive(estimate.site)
+    rows: Rows = []
+    for number, group in enumerate(estimate.scheme.plant.groups):
+
+        def mark(key: str, text: str, number: int = number) -> str:
+            return text + (" (derived)" if f"turbines[{number}].{key}" in derived else "")
+
+        curve = estimate.site.model.turbines[number].efficiency
+        typical = curve is None or curve == "typical"
+        rows.append(
+            (
+                f"{group.count} x {group.type}",
+                mark("unit_capacity", f"{rounded(group.unit_capacity / W_PER_KW)} kW"),
+                mark("rated_discharge", words.discharge(group.rated_discharge)),
+                mark("rated_head", words.head(group.rated_head)),
+                words.percent(group.minimum_share),
+                "typical of the type" if typical else f"given, best {group.curve.best:.3g}",
+            )
+        )
+    return rows
+
+
+def _assumptions(estimate: SiteEstimate) -> list[tuple[str, list[str]]]:
+    site = estimate.site
+    lists = [
+        ("Filled in by the tool", [f"{note.key}: {note.text}" for note in filled_in(site)]),
+        ("Derived from the rest", to_derive(site)),
+        ("Left out of the calculation", [f"{note.key}: {note.text}" for note in left_out(site)]),
+        ("Stated without a source, so taken as assumptions", without_source(site)),
+    ]
+    return [(title, entries) for title, entries in lists if entries]
+
+
+def _years(estimate: SiteEstimate) -> Rows:
+    mean = estimate.mean_annual_energy_mwh
+    return [
+        (
+            words.year_name(estimate, year),
+            rounded(mwh),
+            f"{100 * (mwh / mean - 1):+.0f} %" if mean else "",
+        )
+        for year, mwh in estimate.yearly_energy_mwh.items()
+    ]
+
+
+def _river(estimate: SiteEstimate) -> dict[str, Any]:
+    return {
+        "mean": words.discharge(float(estimate.scheme.valid_discharge.mean())),
+        "kept": words.discharge(estimate.environmental_flow_mean_m3s),
+        "exceeded": [(p, rounded(q)) for p, q in estimate.exceedance_discharge_m3s.items()],
+        "characteristic": [
+            (days, rounded(q)) for days, q in estimate.characteristic_discharge_m3s.items()
+        ],
+    }
+
+
+def _ledger(estimate: SiteEstimate) -> Rows:
+    rows = estimate.ledger_mwh
+    gross = rows[0][1]
+    return [
+        (
+            LEDGER_NAMES[step],
+            ("-" if mwh < 0 else "") + rounded(abs(mwh)),
+            f"{100 * mwh / gross:.1f} %" if gross else "",
+        )
+        for step, mwh in rows
+        if mwh or step in ("gross", "net")
+    ]
+
+
+def _provenance(estimate: SiteEstimate) -> Rows:
+    site, record = estimate.site, estimate.record
+    return [
+        ("Computed by", f"hydroyield {hydroyield.__version__}"),
+        ("Computed on", datetime.date.today().isoformat()),
+        (f"SHA-256 of {site.path.name}", site.sha256),
+        (f"SHA-256 of {record.file.rpartition('/')[2]}", record.sha256),
+    ]

@@ -1,0 +1,176 @@
+"""A described site in the words of a report. User text is passed on; the page escapes it."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any
+
+from hydroyield.jobs import SiteEstimate
+from hydroyield.quantities import W_PER_KW, rounded
+from hydroyield.river.years import MONTH_NAMES, span
+from hydroyield.site.models import SiteFile
+
+KM2 = 1e6  # m2
+
+
+def energy(mwh: float) -> str:
+    """Energy to three significant figures."""
+    return f"{rounded(mwh)} MWh"
+
+
+def head(metres: float) -> str:
+    """Head to 0.01 m under 10 m, else to three significant figures."""
+    return f"{metres:.2f} m" if abs(metres) < 10 else f"{rounded(metres)} m"
+
+
+def discharge(m3s: float) -> str:
+    """Discharge to three significant figures; litres below a tenth of a cubic metre."""
+    if 0 < abs(m3s) < 0.1:
+        return f"{rounded(1000 * m3s)} l/s"
+    return f"{rounded(m3s)} m3/s"
+
+
+def percent(share: float) -> str:
+    """A share in whole per cent."""
+    return f"{100 * share:.0f} %"
+
+
+def year_name(estimate: SiteEstimate, year: str) -> str:
+    """A hydrological year as people write it."""
+    return span(int(year), estimate.scheme.year_start_month)
+
+
+def ranked_years(estimate: SiteEstimate) -> list[tuple[str, float]]:
+    """(year, energy [MWh]) from the driest to the wettest in energy."""
+    return sorted(estimate.yearly_energy_mwh.items(), key=lambda item: item[1])
+
+
+def months(numbers: tuple[int, ...] | None) -> str:
+    """Months in words; a run of months as a range."""
+    if numbers is None or len(numbers) == len(MONTH_NAMES):
+        return "all year"
+    ordered = sorted(numbers)
+    names = [MONTH_NAMES[number - 1] for number in ordered]
+    if len(ordered) > 2 and ordered == list(range(ordered[0], ordered[-1] + 1)):
+        return f"{names[0]} to {names[-1]}"
+    return ", ".join(names)
+
+
+# --- what the estimate rests on -------------------------------------------------------------------
+
+
+def environmental_flow(model: SiteFile) -> list[str]:
+    """The rules, one sentence each."""
+    return [_rule(rule) for rule in model.environmental_flow]
+
+
+def _rule(rule: Any) -> str:
+    if rule.rule == "constant":
+        return f"{discharge(rule.discharge)} all year"
+    if rule.rule == "monthly":
+        return "by month, January first: " + ", ".join(rounded(q) for q in rule.discharge) + " m3/s"
+    if rule.rule == "exceedance":
+        return f"the discharge exceeded {rule.percent:g} % of the time"
+    if rule.rule == "mean_share":
+        return f"{percent(rule.share)} of the mean discharge"
+    return f"everything up to {discharge(rule.above)}, and {percent(rule.share)} of what exceeds it"
+
+
+def abstractions(model: SiteFile) -> list[str]:
+    """Other takers of water, one sentence each."""
+    return [
+        f"{taken.name}: {discharge(taken.discharge)}, {months(taken.months)}"
+        + ("; counts as environmental flow" if taken.counts_as_environmental_flow else "")
+        + ("" if taken.returns else "; does not return above the tailwater")
+        for taken in model.abstractions
+    ]
+
+
+def transfer(model: SiteFile) -> str:
+    """How the record was moved to the site."""
+    moved = model.discharge.transfer
+    if moved is None:
+        return "none: the record counts as that of the site"
+    return (
+        f"by catchment area, {rounded(moved.site_area / KM2)} km2 at the site to "
+        f"{rounded(moved.gauge_area / KM2)} km2 at the gauge, exponent {moved.exponent:g}"
+    )
+
+
+def headwater(model: SiteFile) -> str:
+    """The headwater in one phrase."""
+    form = model.head.headwater
+    if form.weir is not None:
+        return (
+            f"over a weir of {form.weir.length:g} m, crest at {form.weir.crest:.2f} m, "
+            f"coefficient {form.weir.coefficient:g}"
+        )
+    if form.table is not None:
+        return f"table of {len(form.table)} levels against river discharge"
+    return f"{form.level:.2f} m"
+
+
+def tailwater(model: SiteFile) -> str:
+    """The tailwater in one phrase."""
+    form = model.head.tailwater
+    follows = "the river" if form.follows == "river" else "the turbine discharge"
+    if form.rating is not None:
+        rating = form.rating
+        text = (
+            f"rating Q = {rating.coefficient:g} (h - {rating.zero_level:g})^{rating.exponent:g}, "
+        )
+    elif form.channel is not None:
+        text = f"uniform flow in a channel, Manning n {form.channel.manning_n:g}, "
+    elif form.table is not None:
+        text = f"table of {len(form.table)} levels, "
+    else:
+        return f"{form.level:.2f} m"
+    return text + f"following {follows}"
+
+
+def waterway(model: SiteFile) -> str:
+    """The losses in one phrase."""
+    if not model.waterway:
+        return "none stated"
+    total = sum(loss.loss_coefficient for loss in model.waterway)
+    return f"h = k Q^2 with k = {total:.3g} m per (m3/s)^2, Q of the whole plant"
+
+
+def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
+    """(part, value) of the chain from shaft to grid."""
+    given = estimate.site.model.electrical
+    for name, share in (
+        ("Drive", given.drive_efficiency),
+        ("Generator", given.generator_efficiency),
+        ("Transformer", given.transformer_efficiency),
+    ):
+        yield name, "not stated; no loss" if share is None else f"{100 * share:.1f} %"
+    own_use, limit = given.own_use, given.export_limit
+    yield (
+        "Own use",
+        "not stated; none"
+        if own_use is None
+        else f"{rounded(own_use / W_PER_KW)} kW while running",
+    )
+    yield "Export limit", "none" if limit is None else f"{rounded(limit / W_PER_KW)} kW"
+
+
+def sources(model: SiteFile) -> list[tuple[str, str]]:
+    """(block, where its values come from) for every block that says so."""
+    found: list[tuple[str, str]] = []
+    _collect_sources(model, "", found)
+    return found
+
+
+def _collect_sources(block: Any, path: str, found: list[tuple[str, str]]) -> None:
+    if getattr(block, "source", None):
+        found.append((path or "file", block.source))
+    for key in type(block).model_fields:
+        value = getattr(block, key)
+        inner = f"{path}.{key}" if path else key
+        if hasattr(type(value), "model_fields"):
+            _collect_sources(value, inner, found)
+        elif isinstance(value, tuple):
+            for number, entry in enumerate(value):
+                if hasattr(type(entry), "model_fields"):
+                    _collect_sources(entry, f"{inner}[{number}]", found)
