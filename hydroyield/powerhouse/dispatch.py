@@ -230,7 +230,7 @@ class DispatchTable:
             change = np.diff(self._values, append=-np.inf)
         up = change > (most + slack)[:, None]
         down = np.isfinite(change) & (change < (least - slack)[:, None])
-        return up.astype(np.int8) - down.astype(np.int8)
+        return np.asarray(up.astype(np.int8) - down.astype(np.int8))
 
     @cached_property
     def _best_below(self) -> Ints:
@@ -288,12 +288,11 @@ class DispatchTable:
         return self._at_least_discharge(heads, discharge, output)
 
     def _at_least_discharge(self, heads: Floats, discharge: Floats, output: Floats) -> Floats:
-        """Output, exact about the least discharge of the plant, which may miss its column a little."""
+        """Output, exact about the least discharge of the plant, which may miss its column a bit."""
         groups, lines = self.plant.groups, self.lines.line_of_group
         minima = np.array([group.minimum_share for group in groups])[:, None]
-        least = self.full_discharges(heads) * minima
-        first = least.argmin(axis=0)
-        least = least.min(axis=0)
+        first = (self.full_discharges(heads) * minima).argmin(axis=0)
+        least = self._least(heads)
         output = np.where((discharge > 0) & (discharge < least * (1 - 1e-9)), -np.inf, output)
         near = (discharge >= least * (1 - 1e-9)) & (discharge < least * (1 + LEAST_BAND))
         for number in np.unique(first[near & ~np.isfinite(output)]):
@@ -351,12 +350,19 @@ class DispatchTable:
         heads : (lines, n) net heads, held constant [m]
         discharge : (n,) [m3/s]
 
-        Returns (n,), the least of equals, on a column of the table.
+        Returns (n,), the least of equals: on a column of the table, or the plant's exact least.
         """
-        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
+        fully_open = np.maximum(self.full_discharge(heads), 1e-300)
         row = self._nearest_row(heads)
-        low = np.floor(np.minimum(share, 1.0) * self._columns[row] + 1e-6).astype(np.int64)
-        return np.asarray(self._best_below[row, low] / self._columns[row])
+        share = np.minimum(discharge / fully_open, 1.0)
+        low = np.floor(share * self._columns[row] + 1e-6).astype(np.int64)
+        best = self._best_below[row, low] / self._columns[row]
+        return np.where(best > 0, np.maximum(best, self._least(heads) / fully_open), 0.0)
+
+    def _least(self, heads: Floats) -> Floats:
+        """(n,) least discharge of the plant [m3/s]."""
+        minima = np.array([group.minimum_share for group in self.plant.groups])[:, None]
+        return np.asarray((self.full_discharges(heads) * minima).min(axis=0))
 
     def _nearest_row(self, heads: Floats) -> Ints:
         corners = self._corners(heads)
