@@ -128,7 +128,7 @@ def parse(text: str, dimension: Dimension) -> float:
         raise ValueError(_not_a_quantity(stripped, dimension))
     number, unit = float(match[1]), _canonical(match[2])
     if not math.isfinite(number):
-        raise ValueError(f"'{stripped}' is too large for a number")
+        raise ValueError(_too_large(stripped, dimension))
     if not unit:
         unit = dimension.bare_unit
         if unit not in dimension.units:  # a plain number or a bare fraction
@@ -139,7 +139,11 @@ def parse(text: str, dimension: Dimension) -> float:
     try:
         return float((Fraction(match[1]) + offset) * factor)
     except OverflowError:
-        raise ValueError(f"'{stripped}' is too large for a number") from None
+        raise ValueError(_too_large(stripped, dimension)) from None
+
+
+def _too_large(text: str, dimension: Dimension) -> str:
+    return f"'{text}' is too large; write for example {dimension.example}"
 
 
 def unit_factor(unit: str, dimension: Dimension) -> float:

@@ -29,7 +29,7 @@ class Cells:
     cell_of_day : (d,) cell of each day with a value
     month_of_day : (d,) 12 * year index + month - 1 of each day with a value
     years : (y,) names of the years used
-    hours : (y, 12) hours of each month, January first
+    hours : (y, 12) hours of each month, January first [h]
     valid_days : (y, 12) days with a value
     """
 

@@ -93,7 +93,7 @@ class WaterRules:
     def environmental_flow(self, discharge: Floats, season: Ints) -> Floats:
         """Discharge that must stay in the river, never more than the inflow [m3/s].
 
-        discharge, season : arrays of one shape
+        discharge, season : arrays of one shape; discharge in [m3/s]
         """
         flow = self.fixed[season]
         for rule in self.shares:
@@ -104,7 +104,7 @@ class WaterRules:
     def offered(self, discharge: Floats, season: Ints) -> Floats:
         """Water offered to the turbines [m3/s].
 
-        discharge, season : arrays of one shape
+        discharge, season : arrays of one shape; discharge in [m3/s]
         """
         release = np.maximum(0.0, self.environmental_flow(discharge, season) - self.counted[season])
         return np.maximum(0.0, discharge - release - self.abstracted[season])
