@@ -130,6 +130,50 @@ DEMOS = (
             Gap(datetime.date(2019, 8, 19), datetime.date(2019, 8, 21)),
         ),
     ),
+    Demo(
+        folder="skarrig_burn",
+        file="skarrig_daily.csv",
+        gauge="Skarrig Burn at Low Sheepfold",
+        seed=5121,
+        first=datetime.date(2001, 10, 1),
+        last=datetime.date(2024, 9, 30),
+        climate=Climate(
+            wet_share=(0.70, 0.66, 0.64, 0.56, 0.54, 0.55, 0.60, 0.62, 0.64, 0.69, 0.71, 0.72),
+            wet_spell=0.30,
+            depth=(9.4, 8.3, 7.6, 6.3, 6.2, 6.6, 7.2, 7.8, 8.3, 9.3, 9.6, 9.9),
+            depth_shape=1.2,
+            evaporation=(0.2, 0.4, 0.8, 1.4, 2.0, 2.3, 2.3, 1.9, 1.2, 0.6, 0.3, 0.2),
+            spread=0.24,
+        ),
+        catchment=Catchment(area=6.1, soil=60.0, stores=((0.55, 1.2), (0.27, 9.0), (0.18, 80.0))),
+        gaps=(
+            Gap(datetime.date(2006, 1, 9), datetime.date(2006, 1, 10)),
+            Gap(datetime.date(2013, 8, 2), datetime.date(2013, 8, 4)),
+        ),
+    ),
+    Demo(
+        folder="osterby_mill",
+        file="wennet_daily.csv",
+        gauge="River Wennet at Osterby Bridge",
+        seed=6093,
+        first=datetime.date(2008, 5, 1),
+        last=datetime.date(2016, 1, 31),
+        climate=Climate(
+            wet_share=(0.50, 0.46, 0.45, 0.42, 0.42, 0.42, 0.42, 0.42, 0.43, 0.47, 0.50, 0.51),
+            wet_spell=0.32,
+            depth=(4.9, 4.6, 4.5, 4.6, 5.0, 5.6, 6.0, 5.9, 5.4, 5.3, 5.3, 5.2),
+            depth_shape=1.3,
+            evaporation=(0.3, 0.5, 1.0, 1.7, 2.4, 2.8, 2.8, 2.3, 1.5, 0.8, 0.4, 0.2),
+            spread=0.20,
+        ),
+        catchment=Catchment(
+            area=150.0, soil=130.0, stores=((0.30, 1.8), (0.34, 18.0), (0.36, 150.0))
+        ),
+        gaps=(
+            Gap(datetime.date(2010, 12, 18), datetime.date(2010, 12, 29)),
+            Gap(datetime.date(2013, 6, 6), datetime.date(2013, 6, 8)),
+        ),
+    ),
 )
 
 
