@@ -57,8 +57,10 @@ def estimate(site: SiteDescription, record: Record | None = None) -> SiteEstimat
 
 
 def _refuse_missing(site: SiteDescription, path: Path) -> None:
-    if not path.exists():
+    if not path.is_file():
         message = f"there is no file {path}; write the name of the record, relative to this file"
+        if path.is_dir():
+            message = f"{path} is a folder; write the name of the record in it"
         raise RecordError([site.fault(("discharge", "record", "file"), message)])
 
 
@@ -66,11 +68,9 @@ def _no_usable_year(site: SiteDescription, error: NoUsableYearError, record: Rec
     lacking = "; ".join(f"{year}: {reason}" for year, reason in list(error.reasons.items())[:5])
     more = len(error.reasons) - 5
     rest = f"; and {more} more years" if more > 0 else ""
-    return Fault(
-        record.receipt.file,
-        None,
-        "",
-        f"no hydrological year has enough days with a value in every month ({lacking}{rest}); "
-        "use a longer record, or another year_start_month or a lower minimum_month_coverage "
-        "under discharge",
+    return site.fault(
+        ("discharge", "record", "file"),
+        f"{record.receipt.file}: no hydrological year has enough days with a value in every "
+        f"month ({lacking}{rest}); use a longer record, or another year_start_month or a lower "
+        "minimum_month_coverage under discharge",
     )

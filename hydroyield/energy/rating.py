@@ -21,10 +21,14 @@ Floats = NDArray[np.float64]
 
 
 class RatingError(ComputationError):
-    """A rated value cannot be derived. `group` is the number of the turbine group, from 0."""
+    """A rated value cannot be derived.
 
-    def __init__(self, group: int, message: str) -> None:
-        self.group = group
+    group : number of the turbine group, from 0
+    key : of the value, "rated_head" or "unit_capacity"
+    """
+
+    def __init__(self, group: int, key: str, message: str) -> None:
+        self.group, self.key = group, key
         super().__init__(message)
 
 
@@ -111,6 +115,7 @@ def _rated(number: int, unit: UnitSpecification, total: float, setting: Setting)
         if head <= 0:
             raise RatingError(
                 number,
+                "rated_head",
                 "rated_head cannot be derived: no net head is left with all units at rated "
                 f"discharge ({total:.4g} m3/s together); write rated_head, or smaller units",
             )
@@ -181,6 +186,7 @@ def _solve_total(
             below = total
     raise RatingError(
         open_units[0][0],
+        "unit_capacity",
         "no discharge gives this unit_capacity at the net head that is left; write a smaller "
         "unit_capacity, or rated_discharge and rated_head",
     )

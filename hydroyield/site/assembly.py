@@ -277,8 +277,7 @@ def _plant(
     try:
         groups, state = rate_units(units, setting)
     except RatingError as error:
-        key = "rated_head" if units[error.group].unit_capacity is None else "unit_capacity"
-        path = ("turbines", error.group, key)
+        path = ("turbines", error.group, error.key)
         raise SiteFileError([site.fault(path, str(error))]) from None
     faults = [
         fault
