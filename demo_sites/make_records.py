@@ -9,6 +9,8 @@ The model is a shot-noise process through linear reservoirs, as in Weiss (1977),
 Res. 13(1): 101-108, cited from memory: wet days come in spells (a Markov chain of two states),
 the depth of rain on them is random, the soil holds part of it back and evaporates it, and the
 rest leaves through a quick store and two slow stores that keep the river going in dry weather.
+In the mountains it snows on cold days, and the snow melts by degree-days (Hock, 2003, J. Hydrol.
+282: 104-115, cited from memory).
 Weather that persists from month to month makes wet and dry years.
 """
 
@@ -29,6 +31,7 @@ DAY = datetime.timedelta(days=1)
 SECONDS_PER_DAY = 86400.0
 WARM_UP_DAYS = 1461  # before the record starts, so that the stores forget how they began
 WEATHER_MEMORY = 0.55  # correlation of the weather of one month with that of the month before
+WARMTH_MEMORY = 0.8  # correlation of the temperature of one day with that of the day before
 
 Floats = NDArray[np.float64]
 Monthly = tuple[float, ...]  # 12 values, January first
@@ -52,6 +55,20 @@ class Climate:
     depth_shape: float
     evaporation: Monthly
     spread: float
+
+
+@dataclass(frozen=True)
+class Snow:
+    """The cold of a mountain catchment, temperatures of a month January first.
+
+    temperature : mean at each height band [degC], lowest band first; bands are equally large
+    spread : standard deviation of single days [degC]
+    melt : of a degree above freezing [mm/(degC d)]
+    """
+
+    temperature: tuple[Monthly, ...]
+    spread: float
+    melt: float
 
 
 @dataclass(frozen=True)
@@ -85,6 +102,7 @@ class Demo:
     seed : of the random numbers
     first, last : first and last day
     gaps : days left blank
+    snow : None where all of it is rain
     """
 
     folder: str
@@ -96,6 +114,7 @@ class Demo:
     climate: Climate
     catchment: Catchment
     gaps: tuple[Gap, ...]
+    snow: Snow | None = None
 
     @property
     def path(self) -> Path:
@@ -172,6 +191,37 @@ DEMOS = (
         gaps=(
             Gap(datetime.date(2010, 12, 18), datetime.date(2010, 12, 29)),
             Gap(datetime.date(2013, 6, 6), datetime.date(2013, 6, 8)),
+        ),
+    ),
+    Demo(
+        folder="tamsel_fork",
+        file="tamsel_daily.csv",
+        gauge="Tamsel Fork above Cinder Meadow",
+        seed=7309,
+        first=datetime.date(2003, 10, 1),
+        last=datetime.date(2023, 9, 30),
+        climate=Climate(
+            wet_share=(0.46, 0.45, 0.45, 0.44, 0.45, 0.46, 0.45, 0.44, 0.40, 0.40, 0.43, 0.46),
+            wet_spell=0.35,
+            depth=(8.0, 7.8, 7.6, 7.4, 7.6, 8.0, 8.2, 8.0, 7.2, 7.2, 7.8, 8.0),
+            depth_shape=1.2,
+            evaporation=(0.1, 0.1, 0.2, 0.5, 1.1, 1.8, 2.1, 1.8, 1.1, 0.5, 0.2, 0.1),
+            spread=0.22,
+        ),
+        catchment=Catchment(area=8.6, soil=50.0, stores=((0.40, 1.5), (0.30, 12.0), (0.30, 130.0))),
+        gaps=(
+            Gap(datetime.date(2009, 2, 3), datetime.date(2009, 2, 4)),
+            Gap(datetime.date(2011, 6, 11), datetime.date(2011, 6, 19)),
+            Gap(datetime.date(2018, 11, 20), datetime.date(2018, 11, 21)),
+        ),
+        snow=Snow(
+            temperature=(
+                (-5.5, -4.8, -2.4, 1.0, 5.2, 9.0, 11.6, 11.2, 8.0, 3.6, -1.4, -4.6),
+                (-7.5, -7.0, -4.8, -1.6, 2.8, 6.6, 9.2, 8.8, 5.8, 1.6, -3.4, -6.6),
+                (-9.5, -9.2, -7.2, -4.2, 0.4, 4.2, 6.8, 6.4, 3.6, -0.4, -5.4, -8.6),
+            ),
+            spread=3.0,
+            melt=3.8,
         ),
     ),
 )
@@ -266,6 +316,53 @@ def rainfall(days: list[datetime.date], climate: Climate, draw: Iterator[float])
     return rain
 
 
+def warmth(days: list[datetime.date], spread: float, draw: Iterator[float]) -> Floats:
+    """How much warmer than its month each day is [degC], shape (n,)."""
+    warmer = np.zeros(len(days))
+    now = 0.0
+    for k in range(len(days)):
+        news = math.sqrt(1 - WARMTH_MEMORY**2) * spread * standard_normal(draw)
+        now = WARMTH_MEMORY * now + news
+        warmer[k] = now
+    return warmer
+
+
+def melted(falling: Floats, temperature: Floats, melt: float) -> Floats:
+    """Rain and melt water at the ground [mm/d], shape (n,).
+
+    falling : rain or snow [mm/d]; snow below freezing
+    temperature : [degC]
+    melt : of a degree above freezing [mm/(degC d)]
+    """
+    water = np.zeros(falling.size)
+    lying = 0.0
+    for k, (depth, degrees) in enumerate(zip(falling, temperature, strict=True)):
+        if degrees < 0:
+            lying += depth
+            continue
+        thaw = min(lying, melt * degrees)
+        lying -= thaw
+        water[k] = depth + thaw
+    return water
+
+
+def snowed(days: list[datetime.date], falling: Floats, snow: Snow, seed: int) -> Floats:
+    """What reaches the ground as water, mean over the height bands [mm/d], shape (n,)."""
+    warmer = warmth(days, snow.spread, uniforms(seed))
+    bands = []
+    for monthly in snow.temperature:
+        mean = np.array([mean_of_day(monthly, day) for day in days])
+        bands.append(melted(falling, mean + warmer, snow.melt))
+    return sum(bands, np.zeros(len(days))) / len(bands)
+
+
+def mean_of_day(monthly: Monthly, day: datetime.date) -> float:
+    """A monthly value on one day: it holds on the 15th, and is linear from there to the next."""
+    here = day.month - 1 if day.day >= 15 else (day.month - 2) % 12
+    past = (day.day - 15) / 30 if day.day >= 15 else (day.day + 15) / 30
+    return monthly[here] + min(past, 1.0) * (monthly[(here + 1) % 12] - monthly[here])
+
+
 def runoff(days: list[datetime.date], rain: Floats, evaporation: Monthly, soil: float) -> Floats:
     """What the soil lets go [mm/d], shape (n,): little in a dry summer, nearly all in winter."""
     released = np.zeros(len(days))
@@ -297,6 +394,8 @@ def discharge(water: Demo | Stream, first: datetime.date, last: datetime.date) -
     """Daily mean discharge from the first to the last day [m3/s], gaps not yet made."""
     days = days_between(first - WARM_UP_DAYS * DAY, last)
     rain = rainfall(days, water.climate, uniforms(water.seed))
+    if isinstance(water, Demo) and water.snow is not None:
+        rain = snowed(days, rain, water.snow, water.seed + 1)
     released = runoff(days, rain, water.climate.evaporation, water.catchment.soil)
     depth = sum(
         (drained(share * released, time) for share, time in water.catchment.stores),

@@ -316,8 +316,8 @@ class DispatchTable:
         low = np.clip(np.searchsorted(nodes, z, side="right") - 1, 1, nodes.size - 3)
         rows = [low - 1, low, low + 1, low + 2]
         z0, z1, z2, z3 = (nodes[row] for row in rows)
-        p0, p1, p2, p3 = (self._along(row, share) * self._row_z[row] for row in rows)
         with np.errstate(invalid="ignore"):  # where a row cannot pass this total the chord stays
+            p0, p1, p2, p3 = (self._along(row, share) * self._row_z[row] for row in rows)
             left = p1 + (p1 - p0) / (z1 - z0) * (z - z1)
             right = p2 - (p3 - p2) / (z3 - z2) * (z2 - z)
             falls = np.minimum(np.minimum(left, right), np.minimum(p1 * z / z1, p2))
