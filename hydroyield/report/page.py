@@ -156,6 +156,7 @@ def _basis(estimate: SiteEstimate) -> Rows:
             f"{record.days} with a value, {record.missing_days} missing; {record.rows_used} of "
             f"{record.rows_read} rows used",
         ),
+        ("Format of the record", record.file_format),
         ("Unit of the record", f"{record.unit} (from the {record.unit_source})"),
         ("From gauge to site", words.transfer(model)),
         ("Years used", f"{len(estimate.years_used)}, {first} to {last}"),

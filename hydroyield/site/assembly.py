@@ -85,6 +85,7 @@ def record_options(site: SiteDescription) -> RecordOptions:
         missing=record.missing,
         date_order=record.date_order,
         decimal_mark=record.decimal_mark,
+        file_format=record.file_format,
         gauge_area_m2=transfer.gauge_area if transfer else None,
     )
 

@@ -127,6 +127,12 @@ class Record(Block):
         "asked for where it stays open, if left out.",
         examples=["point"],
     )
+    file_format: Text | None = Field(
+        default=None,
+        description="Name of the format of the file, such as usgs-rdb, grdc or plain; found by "
+        "looking at the file if left out.",
+        examples=["plain"],
+    )
 
 
 class Transfer(Block):
