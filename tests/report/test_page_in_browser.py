@@ -9,6 +9,7 @@ import base64
 import io
 import os
 import shutil
+import unicodedata
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -172,14 +173,15 @@ def test_printed_on_a4_no_figure_is_cut(browser: object, page: Path) -> None:
     assert 4 <= len(pages) <= 20
     width, height = (float(pages[0].mediabox[i]) for i in (2, 3))
     assert (width, height) == pytest.approx((595.3, 841.9), abs=1)  # A4 in points
-    text = [sheet.extract_text() for sheet in pages]
+    # ligatures of the font are taken apart
+    text = [unicodedata.normalize("NFKC", sheet.extract_text()) for sheet in pages]
     titles = browser.execute_script(
         "return [...document.querySelectorAll('figure img')].map(i => i.alt.slice(8))"
     )
     for number, title in enumerate(titles, start=1):
         with_caption = [words for words in text if f"Figure {number}. " in words]
         assert len(with_caption) == 1
-        assert title.split(",")[0][:30] in with_caption[0].replace("\n", " ")
+        assert "".join(title.split()) in "".join(with_caption[0].split())
 
 
 def test_a_hostile_name_is_shown_as_text(browser: object, tmp_path: Path) -> None:
