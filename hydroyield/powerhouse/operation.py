@@ -153,6 +153,16 @@ def _better(
     return np.where(better, settled, turbined), np.where(better, found, output)
 
 
+def _better_at(
+    dispatcher: Dispatcher, state: HeadState, turbined: Floats, output: Floats, limit: Floats
+) -> tuple[Floats, Floats]:
+    """Keep the better of what is known, `limit` itself, and the best discharge below it."""
+    exact = dispatcher.output(state, limit)
+    better = exact > output
+    turbined, output = np.where(better, limit, turbined), np.where(better, exact, output)
+    return _better(dispatcher, state, turbined, output, limit)
+
+
 def _spare_head(
     dispatcher: Dispatcher,
 ) -> list[Callable[[HeadState, Floats], Floats]]:
@@ -180,10 +190,8 @@ def _admissible_limit(
         if cut.size:
             part = state[cut]
             limit = last_not_below(partial(spare, part), np.zeros(cut.size), reach[cut])
-            exact = dispatcher.output(part, limit)
-            better = exact > output[cut]
-            now = np.where(better, limit, turbined[cut]), np.where(better, exact, output[cut])
-            turbined[cut], output[cut] = _better(dispatcher, part, *now, limit)
+            known = turbined[cut], output[cut]
+            turbined[cut], output[cut] = _better_at(dispatcher, part, *known, limit)
     return turbined, output
 
 
@@ -206,11 +214,8 @@ def _coarse_search(
         wanted = np.flatnonzero(worth[node])
         if wanted.size:
             limit = best[node[wanted]] * reach[wanted]
-            part = state[wanted]
-            exact = dispatcher.output(part, limit)
-            better = exact > output[wanted]
-            now = np.where(better, limit, turbined[wanted]), np.where(better, exact, output[wanted])
-            turbined[wanted], output[wanted] = _better(dispatcher, part, *now, limit)
+            known = turbined[wanted], output[wanted]
+            turbined[wanted], output[wanted] = _better_at(dispatcher, state[wanted], *known, limit)
     return turbined, output
 
 

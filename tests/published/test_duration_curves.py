@@ -16,7 +16,7 @@ from hydroyield.river.duration import (
     quantile,
 )
 
-# UNESCO-IHE lecture tables (seen): ten flows, and m / (N + 1) of the flows in falling order
+# UNESCO-IHE tables (seen): ten flows, and m / (N + 1) of the flows in falling order
 IHE_FLOWS = [56, 52, 60, 70, 34, 30, 44, 48, 40, 38]
 IHE_POSITIONS = ["0.09", "0.18", "0.27", "0.36", "0.45", "0.545", "0.64", "0.73", "0.82", "0.91"]
 
