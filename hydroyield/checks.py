@@ -25,3 +25,10 @@ class Check:
     value: float | None
     limit: float | None
     message: str
+
+
+def warn_unless(
+    name: str, good: bool, value: float | None, limit: float | None, fine: str, bad: str
+) -> Check:
+    """A check that passes with the sentence `fine`, or warns with `bad`."""
+    return Check(name, "pass" if good else "warn", value, limit, fine if good else bad)

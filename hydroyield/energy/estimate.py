@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -70,20 +71,16 @@ class Estimate:
         full = self.scheme.plant.installed_capacity * float(self.cells.hours.sum())
         return float(self.energy_by_month.sum() / full)
 
-    @property
+    @cached_property
     def maximum_net_power_kw(self) -> float:
         """The most that the plant delivers at any river discharge [kW]."""
         best = int(self.net_power.argmax())
         season = self.cells.season[best]
-        wide = max(self.cells.discharge.max(), 3 * self._fully_open_discharge())
+        wide = max(self.cells.discharge.max(), 3 * self.scheme.plant.rated_discharge)
         around = self.cells.discharge[best] * np.linspace(0.8, 1.25, 200)
         tried = np.concatenate([around, np.geomspace(wide / 1000, wide, 200)])
         run = self.scheme.operate(tried, np.full(tried.size, season))
         return float(max(self.net_power.max(), self.scheme.net_power(run.output).max()) / W_PER_KW)
-
-    def _fully_open_discharge(self) -> float:
-        groups = self.scheme.plant.groups
-        return sum(group.count * group.rated_discharge for group in groups)
 
     # --- by year and month ----------------------------------------------------------------------
 
@@ -168,6 +165,11 @@ class Estimate:
         `turbine_discharge_m3s`, `gross_head_m`, `net_head_m`, `power_kw`. Exceedance is that of
         all valid days, in every month.
         """
+        return self._curve_rows.copy()
+
+    @cached_property
+    def _curve_rows(self) -> pd.DataFrame:
+        """The rows of `curves`, worked out once: tables and figures both want them."""
         import pandas as pd
 
         exceeded, river = self._curve_discharges()

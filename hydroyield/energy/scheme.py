@@ -61,8 +61,7 @@ class Scheme:
         river, season = np.tile(reach, season.size), np.repeat(season, reach.size)
         state = self.head_state(river, season)
         standing = np.zeros(state.size)
-        fully_open = sum(group.count * group.rated_discharge for group in self.plant.groups)
-        running = np.minimum(self.rules.offered(river, season), fully_open)
+        running = np.minimum(self.rules.offered(river, season), self.plant.rated_discharge)
         lines = HeadLines.of(self.plant.groups)
         seen = [
             np.concatenate([state.net(turbined, end) for turbined in (standing, running)])

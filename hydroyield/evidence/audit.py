@@ -6,10 +6,11 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from hydroyield.checks import Check
+from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.evidence.machines import machine_checks
-from hydroyield.hydraulics import LevelTable, Weir
+from hydroyield.hydraulics import Weir
+from hydroyield.hydraulics.levels import range_covered
 from hydroyield.record import Receipt
 from hydroyield.site.assembly import Assembled
 from hydroyield.site.notes import left_out, without_source
@@ -37,13 +38,6 @@ def audit(
         _cross_check(estimate),
         _sources(site),
     )
-
-
-def warn_unless(
-    name: str, good: bool, value: float | None, limit: float | None, fine: str, bad: str
-) -> Check:
-    """A check that passes with one sentence and warns with another."""
-    return Check(name, "pass" if good else "warn", value, limit, fine if good else bad)
 
 
 def _years(estimate: Estimate) -> Check:
@@ -86,9 +80,11 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
         ("headwater", scheme.heads.headwater, cells.discharge),
         ("tailwater", scheme.heads.tailwater, followed),
     ):
-        if not isinstance(level, LevelTable):
+        covered = range_covered(level)
+        if covered is None:
             continue
-        outside = (seen > level.discharges[-1]) | (seen < level.discharges[0])
+        low, high = covered
+        outside = (seen > high) | (seen < low)
         share = cells.mean(outside.astype(np.float64))
         yield warn_unless(
             f"{side}_table_range",
@@ -96,7 +92,7 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
             share,
             LARGEST_SHARE_OUTSIDE,
             f"The {side} table covers {1 - share:.1%} of the time.",
-            f"The {side} table covers {level.discharges[0]:g} to {level.discharges[-1]:g} m3/s, "
+            f"The {side} table covers {low:g} to {high:g} m3/s, "
             f"and {share:.1%} of the time lies outside, where the first level is held and the "
             "last segment extended. Survey levels at more discharges.",
         )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from hydroyield.checks import Check
+from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.powerhouse import UnitGroup, machine_types
 from hydroyield.powerhouse.types import SMALL_MACHINE
@@ -30,16 +30,12 @@ def machine_checks(
     yield _rated_state(assembled)
 
 
-def _check(name: str, good: bool, value: float, limit: float, fine: str, bad: str) -> Check:
-    return Check(name, "pass" if good else "warn", float(value), limit, fine if good else bad)
-
-
 def _generator(label: str, group: UnitGroup, estimate: Estimate) -> Check:
     plant = estimate.scheme.plant
     gives = plant.terminal_weight * group.rated_discharge * group.rated_head
     gives *= group.best_relative_output
     ratio = group.unit_capacity / gives
-    return _check(
+    return warn_unless(
         "generator_size",
         ratio <= OVERSIZED_GENERATOR,
         ratio,
@@ -56,7 +52,7 @@ def _against_type(label: str, group: UnitGroup, typical: bool) -> Iterator[Check
     if kind is None:
         return
     low, high = kind.head_range
-    yield _check(
+    yield warn_unless(
         "head_of_type",
         low <= group.rated_head <= high,
         group.rated_head,
@@ -65,7 +61,7 @@ def _against_type(label: str, group: UnitGroup, typical: bool) -> Iterator[Check
         f"{label}: a rated head of {group.rated_head:.3g} m lies outside {low:g} to {high:g} m, "
         f"the advisory range of the type ({kind.source}). Ask a maker, or compare other types.",
     )
-    yield _check(
+    yield warn_unless(
         "efficiency_of_type",
         group.curve.best <= kind.best_efficiency,
         group.curve.best,
@@ -75,7 +71,7 @@ def _against_type(label: str, group: UnitGroup, typical: bool) -> Iterator[Check
         f"the best of the type ({kind.source}). Ask for the maker's guarantee.",
     )
     if typical:
-        yield _check(
+        yield warn_unless(
             "typical_curve",
             False,
             group.unit_capacity / W_PER_KW,
@@ -99,7 +95,7 @@ def _head_band(label: str, group: UnitGroup, estimate: Estimate) -> Check:
     outside = (run.net_head < low) | (run.net_head > high)
     made = estimate.cells.per_year(estimate.net_power)
     share = estimate.cells.per_year(estimate.net_power * outside) / made if made else 0.0
-    return _check(
+    return warn_unless(
         "head_near_rated",
         share <= LARGEST_SHARE_OUTSIDE,
         share,
@@ -114,7 +110,7 @@ def _head_band(label: str, group: UnitGroup, estimate: Estimate) -> Check:
 
 def _rated_state(assembled: Assembled) -> Check:
     state = assembled.rated_state
-    return _check(
+    return warn_unless(
         "rated_discharge_reached",
         state.reached,
         state.turbined,

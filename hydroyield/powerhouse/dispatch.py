@@ -68,6 +68,7 @@ class DispatchTable:
         self._row_heads = self._heads_of_rows()
         self._row_z = self._reference(self._row_heads)
         self._unit_steps, self._columns = self._choose_steps()
+        self._units = [self._unit_output(n) for n in range(len(plant.groups))]
         self._stages = self._combine()
         self._values = self._stages[-1]
         self._jumps = self._find_jumps()
@@ -159,7 +160,7 @@ class DispatchTable:
         # at no head every unit would be shut: take the shares of a small one
         heads = np.maximum(self._row_heads, 1e-6)
         shares = self.full_discharges(heads[:, :1] if self._alike else heads)
-        shares = shares / (counts @ shares)
+        shares = shares / (counts[:, None] * shares).sum(axis=0)
         fewest = int(np.clip(COLUMNS_PER_UNIT * counts.sum(), *COLUMNS))
         if counts.size > 1:
             fewest = max(fewest, COLUMNS_OF_UNLIKE_UNITS)
@@ -208,8 +209,7 @@ class DispatchTable:
     def _combine(self) -> list[Floats]:
         """Tables of the first, the first two, ... units in the order of the groups."""
         stages: list[Floats] = []
-        for number, group in enumerate(self.plant.groups):
-            unit = self._unit_output(number)
+        for group, unit in zip(self.plant.groups, self._units, strict=True):
             for _ in range(group.count):
                 stages.append(max_plus(stages[-1], unit) if stages else unit)
         return stages
@@ -221,8 +221,7 @@ class DispatchTable:
         gains. A larger change means that a unit starts with the next column, or that the sharing
         so far ended with this one; there is nothing in between.
         """
-        units = [self._unit_output(number) for number in range(len(self.plant.groups))]
-        gains = [np.diff(np.where(np.isfinite(unit), unit, np.nan)) for unit in units]
+        gains = [np.diff(np.where(np.isfinite(unit), unit, np.nan)) for unit in self._units]
         most = np.max([np.where(np.isnan(g), -np.inf, g).max(axis=1) for g in gains], axis=0)
         least = np.min([np.where(np.isnan(g), np.inf, g).min(axis=1) for g in gains], axis=0)
         slack = 1e-9 * np.where(np.isfinite(most), np.abs(most), 0.0)
@@ -384,7 +383,7 @@ class DispatchTable:
         numbers = [n for n, group in enumerate(self.plant.groups) for _ in range(group.count)]
         shares = np.zeros((len(numbers), discharge.size))
         for unit in range(len(numbers) - 1, 0, -1):
-            own = self._unit_output(numbers[unit])
+            own = self._units[numbers[unit]]
             before = self._stages[unit - 1]
             column = np.arange(own.shape[1])
             rest = left[:, None] - column

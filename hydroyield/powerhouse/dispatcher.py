@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from hydroyield.hydraulics import HeadState
 from hydroyield.powerhouse.dispatch import DispatchTable, HeadLines
 from hydroyield.powerhouse.solving import fixed_point
-from hydroyield.powerhouse.units import Plant
+from hydroyield.powerhouse.units import Plant, UnitGroup
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -40,6 +40,16 @@ class Dispatcher:
             self._tables[running] = DispatchTable(part, lines, self._seen[used])
         return self._tables[running], used
 
+    @property
+    def groups_on_lines(self) -> list[tuple[UnitGroup, int]]:
+        """Each group with the head line it works on."""
+        return list(zip(self.plant.groups, self.lines.line_of_group, strict=True))
+
+    @property
+    def units_on_lines(self) -> list[tuple[UnitGroup, int]]:
+        """The same for each unit, in the order of the groups."""
+        return [pair for pair in self.groups_on_lines for _ in range(pair[0].count)]
+
     def heads(self, state: HeadState, turbined: Floats) -> Floats:
         """(lines, n) net heads [m], 0 where the losses take all."""
         net = [state.net(turbined, end) for end in self.lines.lower_ends]
@@ -48,9 +58,7 @@ class Dispatcher:
     def admissible(self, state: HeadState, turbined: Floats, heads: Floats) -> Ints:
         """(n,) bit mask of the groups that head and tailwater allow to run."""
         mask = np.zeros(turbined.shape, dtype=np.int64)
-        for number, (group, line) in enumerate(
-            zip(self.plant.groups, self.lines.line_of_group, strict=True)
-        ):
+        for number, (group, line) in enumerate(self.groups_on_lines):
             # head found by a root search may miss the limit by its tolerance
             enough = heads[line] >= self.plant.minimum_net_head - 1e-9
             runs = enough & (heads[line] > 0)
@@ -97,9 +105,7 @@ class Dispatcher:
         """
         heads = self.heads(state, turbined)
         total = np.zeros(turbined.size)
-        for number, (group, line) in enumerate(
-            zip(self.plant.groups, self.lines.line_of_group, strict=True)
-        ):
+        for number, (group, line) in enumerate(self.groups_on_lines):
             full = group.full_discharge(heads[line])
             open_power = self.plant.terminal_weight * full * heads[line]
             share = group.share_giving(group.unit_capacity / np.maximum(open_power, 1e-300))
@@ -145,13 +151,8 @@ class Dispatcher:
         """(n,) output [W] worked out unit by unit for the sharing that the table holds best."""
         heads = self.heads(state, turbined)
         discharges = self.unit_discharges(state, turbined)
-        units = [
-            (group, line)
-            for group, line in zip(self.plant.groups, self.lines.line_of_group, strict=True)
-            for _ in range(group.count)
-        ]
         output = np.zeros(turbined.size)
-        for (group, line), discharge in zip(units, discharges, strict=True):
+        for (group, line), discharge in zip(self.units_on_lines, discharges, strict=True):
             full = np.maximum(group.full_discharge(heads[line]), 1e-300)
             share = np.clip(discharge / full, group.minimum_share, 1.0)
             power = self.plant.terminal_weight * discharge * heads[line] * group.curve(share)

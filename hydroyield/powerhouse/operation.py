@@ -265,7 +265,8 @@ def _least_at_capacity(
     """
     mask = dispatcher.admissible(state, reach, dispatcher.heads(state, reach))
     bits = (mask[:, None] >> np.arange(len(dispatcher.plant.groups))) & 1
-    capacity = bits @ np.array([g.count * g.unit_capacity for g in dispatcher.plant.groups])
+    of_groups = np.array([g.count * g.unit_capacity for g in dispatcher.plant.groups])
+    capacity = (bits * of_groups).sum(axis=1)
     full = (dispatcher.discharge_at_capacity(state, reach, bits) <= reach) & (capacity > 0)
     full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
     chosen = np.flatnonzero(full)
@@ -289,14 +290,11 @@ def _some_at_capacity(
     part, total = state[chosen], turbined[chosen]
     discharges = dispatcher.unit_discharges(part, total)
     heads = dispatcher.heads(part, total)
-    plant, lines = dispatcher.plant, dispatcher.lines
-    groups = [(g, line) for g, line in zip(plant.groups, lines.line_of_group, strict=True)]
-    units = [pair for pair in groups for _ in range(pair[0].count)]
     found = np.zeros(chosen.size, dtype=np.bool_)
-    for (group, line), discharge in zip(units, discharges, strict=True):
+    for (group, line), discharge in zip(dispatcher.units_on_lines, discharges, strict=True):
         full = np.maximum(group.full_discharge(heads[line]), 1e-300)
         share = np.minimum(1.0, discharge / full + 1 / COLUMNS_PER_UNIT)
-        power = plant.terminal_weight * full * heads[line]
+        power = dispatcher.plant.terminal_weight * full * heads[line]
         found |= (discharge > 0) & (power * share * group.curve(share) >= group.unit_capacity)
     return found
 
@@ -308,9 +306,7 @@ def _no_head(dispatcher: Dispatcher, state: HeadState) -> Bools:
     least = np.min(
         [
             group.minimum_share * group.full_discharge(heads[line])
-            for group, line in zip(
-                dispatcher.plant.groups, dispatcher.lines.line_of_group, strict=True
-            )
+            for group, line in dispatcher.groups_on_lines
         ],
         axis=0,
     )
@@ -326,9 +322,7 @@ def _mean_heads(
         gross = state.gross(turbined, ends[0])
         return gross, gross - state.loss(turbined)
     discharges = dispatcher.unit_discharges(state, turbined)
-    line_of_unit = np.repeat(
-        dispatcher.lines.line_of_group, [group.count for group in dispatcher.plant.groups]
-    )
+    line_of_unit = np.array([line for _, line in dispatcher.units_on_lines])
     gross = np.zeros(turbined.size)
     for line, end in enumerate(ends):
         through = discharges[line_of_unit == line].sum(axis=0)

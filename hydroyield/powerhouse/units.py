@@ -158,5 +158,10 @@ class Plant:
         return sum(group.count * group.unit_capacity for group in self.groups)
 
     @property
+    def rated_discharge(self) -> float:
+        """Sum of the rated discharges [m3/s]."""
+        return sum(group.count * group.rated_discharge for group in self.groups)
+
+    @property
     def unit_count(self) -> int:
         return sum(group.count for group in self.groups)

@@ -7,7 +7,7 @@ import re
 
 import numpy as np
 
-from hydroyield.checks import Check
+from hydroyield.checks import Check, warn_unless
 from hydroyield.record.cleaning import Cleaned
 from hydroyield.record.daily import Daily
 from hydroyield.record.faults import in_lines
@@ -37,10 +37,6 @@ def of_days(daily: Daily) -> tuple[Check, ...]:
     return (_future(daily), _zeros(daily), _gaps(daily))
 
 
-def _check(name: str, good: bool, value: float, limit: float, fine: str, bad: str) -> Check:
-    return Check(name, "pass" if good else "warn", value, limit, fine if good else bad)
-
-
 def _of(cleaned: Cleaned, reason: str) -> Dropped:
     found = [kind for kind in cleaned.dropped if kind.reason == reason]
     return found[0] if found else Dropped(reason, 0, ())
@@ -57,7 +53,7 @@ def _rows_used(cleaned: Cleaned) -> Check:
     rest = ", ".join(f"{kind.count} {kind.reason}" for kind in cleaned.dropped)
     counts = f"{used} of {cleaned.rows_read} rows used" + (f" ({rest})" if rest else "")
     bad = f"{counts}; look whether this column and these marks are meant"
-    return _check("record_rows_used", share >= 0.5, share, 0.5, f"{counts}.", bad)
+    return warn_unless("record_rows_used", share >= 0.5, share, 0.5, f"{counts}.", bad)
 
 
 def _encoding(encoding: str, file_format: str) -> Check:
@@ -80,7 +76,7 @@ def _negative(cleaned: Cleaned) -> Check:
         f"{kind.count} negative values ({_shown(kind)}) were taken as missing; if a negative "
         "number marks missing values, add it to `missing:` under discharge.record."
     ) if kind.count else ""  # fmt: skip
-    return _check(
+    return warn_unless(
         "record_negative_values", not kind.count, kind.count, 0, "No negative values.", bad
     )
 
@@ -91,7 +87,9 @@ def _duplicate(cleaned: Cleaned) -> Check:
         f"{kind.count} rows ({_shown(kind)}) repeat the time of another row without "
         "contradicting it; one row of each time was kept; look why they are doubled."
     ) if kind.count else ""  # fmt: skip
-    return _check("record_duplicate_rows", not kind.count, kind.count, 0, "Each time once.", bad)
+    return warn_unless(
+        "record_duplicate_rows", not kind.count, kind.count, 0, "Each time once.", bad
+    )
 
 
 def _order(cleaned: Cleaned) -> Check:
@@ -120,14 +118,16 @@ def _sentinel(rows: Rows) -> Check:
         f"for no value; if it is one, add `missing: [{top:.10g}]` under discharge.record."
     )
     fine = "No value looks like a mark for missing."
-    return _check("record_high_mark", not is_mark, top, _FAR_ABOVE * below, fine, bad)
+    return warn_unless("record_high_mark", not is_mark, top, _FAR_ABOVE * below, fine, bad)
 
 
 def _future(daily: Daily) -> Check:
     today = np.datetime64(datetime.date.today(), "D")
     count = int(np.count_nonzero(daily.dates > today))
     bad = f"The record runs to {daily.dates[-1]}, which is not over yet; look at its dates."
-    return _check("record_future_dates", not count, count, 0, "No date lies in the future.", bad)
+    return warn_unless(
+        "record_future_dates", not count, count, 0, "No date lies in the future.", bad
+    )
 
 
 def _zeros(daily: Daily) -> Check:
@@ -137,7 +137,7 @@ def _zeros(daily: Daily) -> Check:
         bad = "Every value is zero; look whether this is the column of discharges."
         return Check("record_zero_days", "fail", count, 0, bad)
     bad = f"{count} days have zero discharge; look whether the river was dry or values are missing."
-    return _check("record_zero_days", not count, count, 0, "No day has zero discharge.", bad)
+    return warn_unless("record_zero_days", not count, count, 0, "No day has zero discharge.", bad)
 
 
 def _gaps(daily: Daily) -> Check:
@@ -148,4 +148,4 @@ def _gaps(daily: Daily) -> Check:
         counts += f" (days covered in part, left out: {daily.partial_days})"
     bad = f"{counts} have no value; look whether the gaps favour floods or droughts."
     fine = f"{counts} have no value."
-    return _check("record_missing_days", share <= _GAP_LIMIT, share, _GAP_LIMIT, fine, bad)
+    return warn_unless("record_missing_days", share <= _GAP_LIMIT, share, _GAP_LIMIT, fine, bad)

@@ -114,7 +114,6 @@ def record_of(file: ReadFile, daily: Daily) -> Record:
         rows_read=cleaned.rows_read,
         rows_used=cleaned.rows_read - sum(kind.count for kind in cleaned.dropped),
         dropped=cleaned.dropped,
-        in_order=cleaned.first_line_out_of_order is None,
         first_line_out_of_order=cleaned.first_line_out_of_order,
         daily=daily.daily,
         step_minutes=daily.step_minutes,

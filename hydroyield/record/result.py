@@ -42,7 +42,6 @@ class Receipt:
     rows_read, rows_used : rows with a date; those whose value is in the record
     dropped : the others, one entry for each reason that occurs; rows_used and the counts add up
         to rows_read
-    in_order : whether the rows stood in order of time
     first_line_out_of_order : line of the first row that is earlier than the one above, or None
     daily : whether the record gives one value a day
     step_minutes : usual step between rows [min]
@@ -71,7 +70,6 @@ class Receipt:
     rows_read: int
     rows_used: int
     dropped: tuple[Dropped, ...]
-    in_order: bool
     first_line_out_of_order: int | None
     daily: bool
     step_minutes: float
@@ -88,6 +86,11 @@ class Receipt:
     flags: dict[str, int] = field(default_factory=dict)
     estimated_share: float = 0.0
     files: tuple[tuple[str, str], ...] = ()
+
+    @property
+    def in_order(self) -> bool:
+        """Whether the rows stood in order of time."""
+        return self.first_line_out_of_order is None
 
 
 @dataclass(frozen=True)

@@ -9,7 +9,7 @@ from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import rounded
 from hydroyield.report import words
 from hydroyield.report.result import CAUTION
-from hydroyield.river.years import MONTH_NAMES
+from hydroyield.river.years import MONTH_NAMES, months_in_order
 
 if TYPE_CHECKING:
     from rich.console import Console, RenderableType
@@ -135,8 +135,7 @@ def _months(estimate: SiteEstimate) -> Table:
     from rich.table import Table
 
     means = estimate.monthly_energy_mwh
-    start = estimate.scheme.year_start_month - 1
-    order = [(start + i) % 12 for i in range(12)]
+    order = [month - 1 for month in months_in_order(estimate.scheme.year_start_month)]
     table = Table(
         title="Energy by month, MWh", title_justify="left", title_style="bold",
         box=None, pad_edge=False, padding=(0, 1, 0, 0),

@@ -39,9 +39,10 @@ class Calendar:
         year = 1970 + months // 12
         return cls(year + ((month >= start_month) & (start_month > 1)), month, start_month)
 
-    def months_in_order(self) -> list[int]:
-        """The twelve calendar months in the order of the hydrological year."""
-        return [(self.start_month - 1 + i) % 12 + 1 for i in range(12)]
+
+def months_in_order(start_month: int) -> list[int]:
+    """The twelve calendar months in the order of a hydrological year."""
+    return [(start_month - 1 + i) % 12 + 1 for i in range(12)]
 
 
 def month_days(year: Ints, month: Ints, start_month: int) -> Ints:
@@ -102,11 +103,10 @@ def usable_years(
 
 
 def _reason(months: MonthTable, row: int, enough: NDArray[np.bool_], start_month: int) -> str:
-    order = [(start_month - 1 + i) % 12 for i in range(12)]
     short = [
-        f"{MONTH_NAMES[m]} {months.valid[row, m]} of {months.days[row, m]}"
-        for m in order
-        if not enough[m]
+        f"{MONTH_NAMES[m - 1]} {months.valid[row, m - 1]} of {months.days[row, m - 1]}"
+        for m in months_in_order(start_month)
+        if not enough[m - 1]
     ]
     shown = ", ".join(short[:4]) + (f" and {len(short) - 4} more months" if len(short) > 4 else "")
     return f"too few days with a value: {shown}"

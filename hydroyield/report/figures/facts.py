@@ -25,7 +25,7 @@ from hydroyield.report.figures.data import (
     thinned,
     typical_years,
 )
-from hydroyield.river.years import MONTH_NAMES, Calendar, span
+from hydroyield.river.years import MONTH_NAMES, Calendar, months_in_order, span
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -101,7 +101,7 @@ class Facts:
             turbined=mean["turbine_discharge_m3s"],
             running=(discharges > 0).sum(axis=0),
             count=scheme.plant.unit_count,
-            rated=sum(group.count * group.rated_discharge for group in scheme.plant.groups),
+            rated=scheme.plant.rated_discharge,
             months=self._main_months,
         )
 
@@ -183,7 +183,7 @@ class Facts:
     @cached_property
     def months(self) -> MonthEnergies:
         start = self.estimate.scheme.year_start_month
-        order = [(start - 1 + i) % 12 for i in range(12)]
+        order = [month - 1 for month in months_in_order(start)]
         return MonthEnergies(
             tuple(MONTH_NAMES[m][:3] for m in order),
             self.estimate.energy_by_month[:, order] / WH_PER_MWH,
