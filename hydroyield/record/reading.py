@@ -18,9 +18,10 @@ from hydroyield.record.daily import Daily, daily_means
 from hydroyield.record.faults import Source, in_lines
 from hydroyield.record.formats import PLAIN, format_of_text
 from hydroyield.record.options import RecordOptions, check_options
-from hydroyield.record.result import Receipt, Record
+from hydroyield.record.result import FinerSeries, Receipt, Record
 from hydroyield.record.rows import BLANK, USED, Layout, Rows
 from hydroyield.record.text import read_document
+from hydroyield.record.time_steps import step_checks
 from hydroyield.record.units import factor_of, settle_unit
 
 if TYPE_CHECKING:
@@ -122,7 +123,7 @@ def record_of(file: ReadFile, daily: Daily) -> Record:
         days=len(daily.dates) - missing_days,
         missing_days=missing_days,
         partial_days=daily.partial_days,
-        checks=(*file.checks, *findings.of_days(daily)),
+        checks=(*file.checks, *findings.of_days(daily), *_of_steps(cleaned.rows, daily)),
         file_format=file.file_format,
         station=layout.station,
         series=layout.series,
@@ -131,7 +132,33 @@ def record_of(file: ReadFile, daily: Daily) -> Record:
         estimated_share=_estimated_share(cleaned.rows),
         files=file.files,
     )
-    return Record(daily.dates, daily.means * cleaned.rows.factor, receipt)
+    return Record(
+        daily.dates,
+        daily.means * cleaned.rows.factor,
+        receipt,
+        doubtful=_doubtful_days(cleaned.rows, daily),
+        finer=None if daily.daily else _finer(cleaned.rows, daily),
+    )
+
+
+def _doubtful_days(rows: Rows, daily: Daily) -> NDArray[np.bool_] | None:
+    """(n,) days with a row used whose flag says estimated or affected by ice."""
+    if rows.flags is None:
+        return None
+    doubtful = (rows.reasons == USED) & np.isin(rows.flags, sorted(rows.doubtful))
+    return np.isin(daily.dates, rows.dates[doubtful])
+
+
+def _of_steps(rows: Rows, daily: Daily) -> tuple[Check, ...]:
+    if daily.daily:
+        return ()
+    return step_checks(rows.times[rows.reasons == USED], 60 * daily.step_minutes)
+
+
+def _finer(rows: Rows, daily: Daily) -> FinerSeries:
+    used = rows.reasons == USED
+    discharge = rows.factor * rows.values[used]  # noqa: PD011  not of pandas
+    return FinerSeries(rows.times[used], discharge, 60 * daily.step_minutes)
 
 
 def record_from_series(series: pd.Series[float], unit: str, gauge_area_m2: float | None) -> Record:

@@ -94,17 +94,44 @@ class Receipt:
 
 
 @dataclass(frozen=True)
+class FinerSeries:
+    """The values of a record that is finer than daily, each time once.
+
+    times : written clock time [s] since 1970-01-01, rising, shape (m,)
+    discharge : [m3/s], shape (m,)
+    step_seconds : usual step [s]
+    """
+
+    times: NDArray[np.int64]
+    discharge: NDArray[np.float64]
+    step_seconds: float
+
+
+@dataclass(frozen=True)
 class Record:
     """Daily mean discharge at a gauge.
 
     dates : every calendar day from the first to the last with a value, datetime64[D], shape (n,)
     discharge : daily means [m3/s], nan where missing, shape (n,)
     receipt : how the record was read
+    filled : days whose value was estimated from a reference, shape (n,); None where none was
+    doubtful : days whose quality code says estimated or affected by ice, shape (n,); None where
+        the file has no codes
+    finer : the values as recorded, where they are finer than daily
     """
 
     dates: NDArray[np.datetime64]
     discharge: NDArray[np.float64]
     receipt: Receipt
+    filled: NDArray[np.bool_] | None = None
+    doubtful: NDArray[np.bool_] | None = None
+    finer: FinerSeries | None = None
+
+    @property
+    def missing_by_month(self) -> tuple[int, ...]:
+        """Days without a value between first and last, by calendar month, January first [d]."""
+        month = self.dates.astype("datetime64[M]").astype(np.int64) % 12
+        return tuple(np.bincount(month[np.isnan(self.discharge)], minlength=12).tolist())
 
     def series(self) -> pd.Series[float]:
         """The record as a pandas series [m3/s] over its dates, nan where missing."""
