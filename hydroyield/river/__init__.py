@@ -2,6 +2,7 @@
 
 from hydroyield.river.cells import Cells, condense
 from hydroyield.river.duration import characteristic_discharge, exceedance_percent, quantile
+from hydroyield.river.duration_table import cells_of_table
 from hydroyield.river.reserve import Abstraction, InflowShare, WaterRules
 from hydroyield.river.years import Calendar, usable_years
 
@@ -11,6 +12,7 @@ __all__ = [
     "Cells",
     "InflowShare",
     "WaterRules",
+    "cells_of_table",
     "characteristic_discharge",
     "condense",
     "exceedance_percent",

@@ -23,6 +23,8 @@ PLOTTING_CONSTANT: dict[Position, float] = {
     "hazen": 0.5,
 }
 DAYS_PER_YEAR = 365.25
+EXCEEDANCES = (1, 5, 10, 20, 30, 40, 50, 60, 70, 80, 90, 95, 99)  # %, those of every result
+CHARACTERISTIC_DAYS = (10, 30, 90, 180, 270, 355)  # d, those of every result
 
 
 def _positions(count: int, position: Position) -> Floats:
@@ -56,9 +58,9 @@ def quantile(values: ArrayLike, percent: ArrayLike, position: Position = "weibul
     value beyond the first or last rank.
     """
     falling = np.sort(np.asarray(values, dtype=np.float64))[::-1]
-    return np.interp(
-        np.asarray(percent, dtype=np.float64) / 100, _positions(falling.size, position), falling
-    )
+    share = np.asarray(percent, dtype=np.float64) / 100
+    found: Floats = np.interp(share, _positions(falling.size, position), falling)
+    return found
 
 
 def characteristic_discharge(
@@ -74,3 +76,21 @@ def characteristic_discharge(
     Returns [m3/s], of the shape of `days`.
     """
     return quantile(values, 100 * np.asarray(days, dtype=np.float64) / days_per_year)
+
+
+def usual_exceedances(values: ArrayLike) -> dict[str, float]:
+    """Discharge equalled or exceeded at `EXCEEDANCES`, by the percentage as text [m3/s].
+
+    values : array_like, (n,) [m3/s]; no nan
+    """
+    found = quantile(values, EXCEEDANCES)
+    return {str(p): float(q) for p, q in zip(EXCEEDANCES, found, strict=True)}
+
+
+def usual_characteristic(values: ArrayLike) -> dict[str, float]:
+    """Discharge equalled or exceeded on `CHARACTERISTIC_DAYS`, by the days as text [m3/s].
+
+    values : array_like, (n,) [m3/s]; no nan
+    """
+    found = characteristic_discharge(values, CHARACTERISTIC_DAYS)
+    return {str(d): float(q) for d, q in zip(CHARACTERISTIC_DAYS, found, strict=True)}
