@@ -62,7 +62,7 @@ def estimate(
     With --json no page and no figures are made; FOLDER then gets the tables alone.
     """
     from hydroyield import jobs
-    from hydroyield.report.files import result_text, steps_of_page, write_page, write_tables
+    from hydroyield.report.files import figure_count, result_text, write_page, write_tables
     from hydroyield.report.folder import check_folder, write_folder
     from hydroyield.report.progress import progress
     from hydroyield.report.summary import print_summary
@@ -74,20 +74,123 @@ def estimate(
         check_folder(out)
     found = jobs.estimate(read_site(site))
     if out is not None:
-        place = out
-        with progress(0 if as_json else steps_of_page(), quiet=quiet or as_json) as steps:
+        with progress(0 if as_json else figure_count(), quiet=quiet or as_json) as steps:
 
             def fill(folder: Path) -> None:
                 write_tables(found, folder)
                 if not as_json:
                     write_page(found, folder, steps)
 
-            write_folder(place, fill)
+            write_folder(out, fill)
     if as_json:
         sys.stdout.write(result_text(found))
     elif out is not None and not quiet:
         print_summary(found)
         typer.echo(f"\nWritten to {out}; open {out / 'report.html'}")
+
+
+@app.command()
+def record(
+    files: Annotated[
+        list[Path],
+        typer.Argument(metavar="FILE...", help="The record; several files of one gauge are one."),
+    ],
+    out: Annotated[
+        Path | None,
+        typer.Option("--out", metavar="FOLDER", help="Folder to write: page, figures, tables."),
+    ] = None,
+    as_json: JsonOption = False,
+    unit: Annotated[
+        str | None, typer.Option("--unit", help="Unit of the values, such as m3/s, l/s, cfs, mm/d.")
+    ] = None,
+    file_format: Annotated[
+        str | None,
+        typer.Option("--file-format", metavar="NAME", help="Format, such as grdc or plain."),
+    ] = None,
+    date_column: Annotated[
+        str | None, typer.Option("--date-column", metavar="NAME", help="Column of dates.")
+    ] = None,
+    value_column: Annotated[
+        str | None,
+        typer.Option("--value-column", metavar="NAME", help="Column of discharges, or the series."),
+    ] = None,
+    missing: Annotated[
+        list[str] | None,
+        typer.Option("--missing", metavar="MARK", help="A mark for no value; may be repeated."),
+    ] = None,
+    date_order: Annotated[
+        str | None, typer.Option("--date-order", help="day_first or month_first.")
+    ] = None,
+    decimal_mark: Annotated[
+        str | None, typer.Option("--decimal-mark", help="point or comma.")
+    ] = None,
+    gauge_area: Annotated[
+        str | None,
+        typer.Option("--gauge-area", metavar="AREA", help='Catchment area, such as "312 km2".'),
+    ] = None,
+    year_start_month: Annotated[
+        int,
+        typer.Option("--year-start-month", min=1, max=12, help="First month of the water year."),
+    ] = 10,
+    quiet: Annotated[bool, typer.Option("--quiet", help="Print nothing but faults.")] = False,
+) -> None:
+    """Read a discharge record and say what it is worth: receipt, checks, figures of the river."""
+    from hydroyield import jobs
+    from hydroyield.record import RecordOptions
+    from hydroyield.report.files import (
+        figure_count,
+        record_result_text,
+        write_record_page,
+        write_record_tables,
+    )
+    from hydroyield.report.folder import check_folder, write_folder
+    from hydroyield.report.progress import progress
+    from hydroyield.report.record_summary import print_record_summary
+
+    if out is not None:
+        check_folder(out)
+    options = RecordOptions(
+        unit=unit,
+        date_column=date_column,
+        value_column=value_column,
+        missing=tuple(missing or ()),
+        date_order=date_order,
+        decimal_mark=decimal_mark,
+        gauge_area_m2=None if gauge_area is None else _area(gauge_area),
+        file_format=file_format,
+    )
+    found = jobs.look_at_record(files, options, year_start_month=year_start_month)
+    if out is not None:
+        steps_wanted = 0 if as_json else figure_count(of_record=True)
+        with progress(steps_wanted, quiet=quiet or as_json) as steps:
+
+            def fill(folder: Path) -> None:
+                write_record_tables(found, folder)
+                if not as_json:
+                    write_record_page(found, folder, steps)
+
+            write_folder(out, fill)
+    if as_json:
+        sys.stdout.write(record_result_text(found))
+    elif not quiet:
+        print_record_summary(found)
+        if out is not None:
+            typer.echo(f"\nWritten to {out}; open {out / 'report.html'}")
+
+
+def _area(text: str) -> float:
+    """Catchment area that the user wrote [m2]."""
+    from hydroyield.quantities import CATCHMENT_AREA, parse
+
+    try:
+        area = parse(text, CATCHMENT_AREA)
+    except ValueError as error:
+        raise typer.BadParameter(str(error), param_hint="--gauge-area") from None
+    if not area > 0:
+        raise typer.BadParameter(
+            "write an area above 0, such as 312 km2", param_hint="--gauge-area"
+        )
+    return area
 
 
 @app.command()

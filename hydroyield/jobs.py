@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Sequence
 from dataclasses import dataclass, fields
 from pathlib import Path
 
@@ -10,9 +12,19 @@ from hydroyield.energy import Estimate, estimate_energy
 from hydroyield.energy.estimate import NoUsableYearError
 from hydroyield.errors import Fault, RecordError
 from hydroyield.evidence import audit
+from hydroyield.evidence.doubts import Rerun, doubts_of, rerun, suspects_of, year_doubts
 from hydroyield.record import Receipt, Record, read_record
-from hydroyield.site.assembly import assemble, record_options
+from hydroyield.record.joining import read_records
+from hydroyield.record.options import RecordOptions
+from hydroyield.river.views import RiverViews
+from hydroyield.site.assembly import Assembled, assemble
 from hydroyield.site.reading import SiteDescription
+from hydroyield.site.river_assembly import (
+    RiverAtSite,
+    record_options,
+    reference_options,
+    river_at_site,
+)
 
 
 @dataclass(frozen=True)
@@ -20,18 +32,34 @@ class SiteEstimate(Estimate):
     """The annual energy of a described site, with what it rests on.
 
     site : the site file
-    record : the receipt of the discharge record
+    measured : the discharge record as it was read; None with a duration table
+    reference : the reference record; None without one
+    river : how the record became the river at the site
+    reruns : the energy of other readings of the record, where there is a doubt about it
     checks : every check of the result
     """
 
     site: SiteDescription
-    record: Receipt
+    measured: Record | None
+    reference: Record | None
+    river: RiverAtSite
+    reruns: tuple[Rerun, ...]
     checks: tuple[Check, ...]
+
+    @property
+    def record(self) -> Receipt | None:
+        """The receipt of the discharge record; None with a duration table."""
+        return None if self.measured is None else self.measured.receipt
 
     def warnings(self) -> list[Check]:
         """The checks that did not pass, failed ones first."""
-        found = [check for check in self.checks if check.outcome != "pass"]
-        return sorted(found, key=lambda check: check.outcome != "fail")
+        return not_passed(self.checks)
+
+
+def not_passed(checks: Sequence[Check]) -> list[Check]:
+    """The checks that did not pass, failed ones first."""
+    found = [check for check in checks if check.outcome != "pass"]
+    return sorted(found, key=lambda check: check.outcome != "fail")
 
 
 def estimate(site: SiteDescription, record: Record | None = None) -> SiteEstimate:
@@ -42,26 +70,82 @@ def estimate(site: SiteDescription, record: Record | None = None) -> SiteEstimat
 
     Raises SiteFileError or RecordError with every fault found.
     """
-    if record is None:
-        path = site.record_path
-        _refuse_missing(site, path)
-        record = read_record(path, record_options(site), shown_as=str(path))
-    assembled = assemble(site, record)
+    record, reference = record or _record(site), _reference(site)
+    river = river_at_site(site, record, reference)
+    assembled = assemble(site, river)
     try:
         energy = estimate_energy(assembled.scheme)
     except NoUsableYearError as error:
+        assert record is not None  # a duration table has no years that could be short
         raise RecordError([_no_usable_year(site, error, record)]) from None
-    checks = audit(site, record.receipt, assembled, energy)
+    return _concluded(site, record, reference, assembled, energy)
+
+
+def _concluded(
+    site: SiteDescription,
+    record: Record | None,
+    reference: Record | None,
+    assembled: Assembled,
+    energy: Estimate,
+) -> SiteEstimate:
+    """The result with its checks, and with what each doubt about the record would change."""
+    transfer = site.model.discharge.transfer
+    area = None if transfer is None else transfer.gauge_area
+    doubts = () if record is None else doubts_of(record, area, assembled, energy)
+    reruns = rerun(site, doubts, reference, assembled, energy)
     known = {field.name: getattr(energy, field.name) for field in fields(energy)}
-    return SiteEstimate(**known, site=site, record=record.receipt, checks=checks)
+    return SiteEstimate(
+        **known,
+        site=site,
+        measured=record,
+        reference=reference,
+        river=assembled.river,
+        reruns=reruns,
+        checks=audit(site, record, assembled, energy, doubts, reruns),
+    )
 
 
-def _refuse_missing(site: SiteDescription, path: Path) -> None:
-    if not path.is_file():
-        message = f"there is no file {path}; write the name of the record, relative to this file"
-        if path.is_dir():
-            message = f"{path} is a folder; write the name of the record in it"
-        raise RecordError([site.fault(("discharge", "record", "file"), message)])
+def _record(site: SiteDescription) -> Record | None:
+    """The record that a site file names; None where it gives a duration table."""
+    if not site.record_paths:
+        return None
+    return _read(site, "record", site.record_paths, record_options(site))
+
+
+def _reference(site: SiteDescription) -> Record | None:
+    if not site.reference_paths:
+        return None
+    try:
+        return _read(site, "reference", site.reference_paths, reference_options(site))
+    except RecordError as error:
+        raise RecordError([_of_reference(fault) for fault in error.faults]) from None
+
+
+def _of_reference(fault: Fault) -> Fault:
+    """A fault that names the keys of the record, naming those of the reference."""
+    key, message = (
+        text.replace("discharge.record", "discharge.reference")
+        for text in (fault.key, fault.message)
+    )
+    return Fault(fault.file, fault.line, key, message)
+
+
+def _read(
+    site: SiteDescription, block: str, paths: Sequence[Path], options: RecordOptions
+) -> Record:
+    missing = [path for path in paths if not path.is_file()]
+    if missing:
+        raise RecordError([_missing(site, block, path) for path in missing])
+    if len(paths) == 1:
+        return read_record(paths[0], options, shown_as=str(paths[0]))
+    return read_records(paths, options)
+
+
+def _missing(site: SiteDescription, block: str, path: Path) -> Fault:
+    message = f"there is no file {path}; write the name of the record, relative to this file"
+    if path.is_dir():
+        message = f"{path} is a folder; write the name of the record in it"
+    return site.fault(("discharge", block, "file"), message)
 
 
 def _no_usable_year(site: SiteDescription, error: NoUsableYearError, record: Record) -> Fault:
@@ -74,3 +158,62 @@ def _no_usable_year(site: SiteDescription, error: NoUsableYearError, record: Rec
         f"month ({lacking}{rest}); use a longer record, or another year_start_month or a lower "
         "minimum_month_coverage under discharge",
     )
+
+
+# --- a record alone -------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class GaugeRecord:
+    """A discharge record at its gauge, before any site.
+
+    record : as it was read
+    views : its statistics
+    checks : every check of it
+    """
+
+    record: Record
+    views: RiverViews
+    checks: tuple[Check, ...]
+
+    def warnings(self) -> list[Check]:
+        """The checks that did not pass, failed ones first."""
+        return not_passed(self.checks)
+
+
+def look_at_record(
+    paths: Sequence[Path],
+    options: RecordOptions,
+    *,
+    year_start_month: int = 10,
+    minimum_month_coverage: float = 0.9,
+) -> GaugeRecord:
+    """Read a record, in one file or in several of one gauge, and look at it.
+
+    year_start_month : first month of the hydrological year
+    minimum_month_coverage : share of the days of each month that a complete year needs
+
+    Raises RecordError with every fault found.
+    """
+    try:
+        record = read_records(paths, options)
+    except RecordError as error:
+        raise RecordError([_of_command(fault) for fault in error.faults]) from None
+    views = RiverViews(record.dates, record.discharge, year_start_month, minimum_month_coverage)
+    found = (*suspects_of(record, options.gauge_area_m2), *year_doubts(*views.yearly_means()))
+    checks = (*record.receipt.checks, *(doubt.check for doubt in found))
+    return GaugeRecord(record, views, checks)
+
+
+_KEY = re.compile(r"`(\w+):(?: (\[?[^`]*?\]?))?`")
+
+
+def _of_command(fault: Fault) -> Fault:
+    """A fault that names keys of a site file, naming options of the command."""
+    message = fault.message.replace(" under discharge.record", "")
+    message = _KEY.sub(
+        lambda key: f"`--{key[1].replace('_', '-')}{' ' + key[2].strip('[]') if key[2] else ''}`",
+        message,
+    )
+    key = fault.key.replace("discharge.record.", "--").replace("_", "-")
+    return Fault(fault.file, fault.line, key, message)

@@ -15,8 +15,9 @@ import numpy as np
 import pytest
 
 import hydroyield
-from hydroyield.record import RecordOptions, read_record
+from hydroyield.record import read_record
 from hydroyield.site import read_site_file
+from hydroyield.site.river_assembly import record_options
 
 DEMO_SITES = Path(__file__).parents[1] / "demo_sites"
 FOLDERS = sorted(
@@ -51,7 +52,7 @@ def test_every_folder_has_a_record_that_the_script_makes() -> None:
 @folders
 def test_a_demo_is_complete_and_says_that_it_is_invented(folder: Path) -> None:
     site = read_site_file(folder / "site.yaml")
-    record = site.record_path.read_text(encoding="utf-8")
+    record = site.record_paths[0].read_text(encoding="utf-8")
     assert record.startswith("#")
     assert "invented" in record.split("date,")[0]
     assert "invented" in (folder / "README.md").read_text(encoding="utf-8")
@@ -64,7 +65,8 @@ LOOK_AT = {
     "skarrig_burn": {"left_out_outages"},
     "tamsel_fork": {"left_out_outages"},
     "osterby_mill": {
-        "years_used", "tailwater_table_range", "left_out_environmental_flow", "left_out_transfer",
+        "years_used", "all_valid_days", "record_ended", "tailwater_table_range",
+        "left_out_environmental_flow", "left_out_transfer",
         "left_out_waterway", "left_out_transformer_efficiency", "left_out_own_use",
         "left_out_outages", "typical_curve", "sources",
     },
@@ -211,7 +213,7 @@ def test_tamsel_gets_less_from_its_second_unit_and_nothing_from_its_first_rule()
 @demos
 def test_a_record_is_read_with_every_day_and_gap(demo: Any) -> None:
     site = read_site_file(DEMO_SITES / demo.folder / "site.yaml")
-    record = read_record(site.record_path, RecordOptions(unit=site.model.discharge.record.unit))
+    record = read_record(site.record_paths[0], record_options(site))
     missing = sum((gap.last - gap.first).days + 1 for gap in demo.gaps)
     assert record.dates.size == (demo.last - demo.first).days + 1
     assert record.receipt.missing_days == missing

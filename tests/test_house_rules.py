@@ -91,12 +91,17 @@ def test_the_rule_sees_the_quantities() -> None:
 UNIT_OF_SUFFIX = {
     "_mwh": "MWh", "_kwh": "kWh", "_kw": "kW", "_m3s": "m3/s", "_m": "m", "_m2": "m2",
     "_km2": "km2", "_percent": "%", "_kg_m3": "kg/m3", "_m_s2": "m/s2", "_share": "1",
-    "_hours": "h", "_days": "d", "_factor": "1",
+    "_hours": "h", "_days": "d", "_factor": "1", "_index": "1", "_minutes": "min", "_m3": "m3",
+    "_years": "a",
 }  # fmt: skip
 # counts, and what has its unit in the message beside it
-WITHOUT_SUFFIX = {"count", "days", "limit", "month", "rows_read", "rows_used", "value"}
+WITHOUT_SUFFIX = {
+    "correlation", "count", "date", "days", "filled", "intercept", "limit", "low_flow_count",
+    "low_flow_start_month", "month", "rows_read", "rows_used", "slope", "value", "year",
+    "year_start_month",
+}  # fmt: skip
 # labels and settings, no quantities: version of the format, seed, counts by a reason in words
-NO_QUANTITY = {"format", "seed", "rows_dropped"}
+NO_QUANTITY = {"format", "seed", "rows_dropped", "first_lines_dropped", "flags"}
 
 
 def has_unit(name: str) -> bool:

@@ -18,10 +18,11 @@ from pydantic import BaseModel
 import hydroyield
 from hydroyield.jobs import SiteEstimate
 from hydroyield.site import read_site_file, read_site_text
-from hydroyield.site.discharge_models import Discharge, Record, Transfer
+from hydroyield.site.discharge_models import Discharge, InflowBelowIntake, Transfer
 from hydroyield.site.head_models import Channel, Head, Headwater, Rating, Tailwater, Weir
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
+from hydroyield.site.record_models import Record, Reference
 from hydroyield.site.river_models import RULES, Abstraction
 
 ROOT = Path(__file__).parents[1]
@@ -29,8 +30,9 @@ FOLDER = ROOT / "site_configs"
 FILES = sorted(FOLDER.glob("*.yaml"))
 KEY = re.compile(r"(?P<indent> *)(?P<off>#?)(?P<entry>- )?(?P<key>[a-z_]+):")
 MODELS: tuple[type[BaseModel], ...] = (
-    SiteFile, Site, Discharge, Record, Transfer, Abstraction, Head, Headwater, Weir, Tailwater,
-    Rating, Channel, TurbineGroup, Electrical, Operation, *RULES.values(),
+    SiteFile, Site, Discharge, Record, Reference, Transfer, InflowBelowIntake, Abstraction, Head,
+    Headwater, Weir, Tailwater, Rating, Channel,
+    TurbineGroup, Electrical, Operation, *RULES.values(),
 )  # fmt: skip
 
 files = pytest.mark.parametrize("path", FILES, ids=lambda path: path.stem)
@@ -77,7 +79,7 @@ def test_there_is_one_for_each_layout_and_nothing_that_is_not_shipped() -> None:
 
 @files
 def test_it_is_valid_as_it_stands(path: Path) -> None:
-    assert read_site_file(path).record_path == path.parent / "record.csv"
+    assert read_site_file(path).record_paths == (path.parent / "record.csv",)
 
 
 @files

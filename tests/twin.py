@@ -346,11 +346,14 @@ def read_record(path: Path) -> dict[datetime.date, float]:
 
 
 def move_to_site(days: dict[datetime.date, float], transfer: dict[str, Any] | None) -> Any:
-    """Scale with the ratio of the areas, if asked for."""
+    """Scale with the ratio of the areas or of the means, if asked for."""
     if transfer is None:
         return days
-    ratio = transfer["site_area"] / transfer["gauge_area"]
-    factor = ratio ** transfer.get("exponent", 1.0)
+    if transfer["method"] == "mean_ratio":
+        factor = transfer["site_mean"] / transfer["gauge_mean"]
+    else:
+        ratio = transfer["site_area"] / transfer["gauge_area"]
+        factor = ratio ** transfer.get("exponent", 1.0)
     return {day: q * factor for day, q in days.items()}
 
 
@@ -507,6 +510,16 @@ def waterway_loss(plant: Plant, total: Any) -> Any:
     return loss
 
 
+def joining_below(plant: Plant, discharge: float) -> float:
+    """Discharge that joins the river between intake and tailwater [m3/s]."""
+    stated = plant.site["discharge"].get("inflow_below_intake")
+    if stated is None:
+        return 0.0
+    if "area" in stated:
+        return discharge * stated["area"] / plant.site["discharge"]["transfer"]["site_area"]
+    return discharge * stated["discharge"] / plant.mean
+
+
 HeadsOf = Callable[[float | None, Any], tuple[Any, Any]]
 
 
@@ -517,7 +530,7 @@ def heads_of_day(plant: Plant, discharge: float, water: Water) -> HeadsOf:
     """
     head = plant.site["head"]
     follows_turbine = head["tailwater"].get("follows", "river") == "turbine"
-    below = max(0.0, discharge - water.lost)
+    below = max(0.0, discharge + joining_below(plant, discharge) - water.lost)
     river_level = None if follows_turbine else float(tailwater_level(head["tailwater"], below))
     lowest = head.get("minimum_net_head", 0.0)
 
@@ -543,7 +556,8 @@ def reference_head(plant: Plant) -> float:
     else:
         upper = float(headwater_level(head["headwater"], median, 0.0, 0.0))
     turbine = head["tailwater"].get("follows", "river") == "turbine"
-    return upper - float(tailwater_level(head["tailwater"], 0.0 if turbine else median))
+    below = median + joining_below(plant, median)
+    return upper - float(tailwater_level(head["tailwater"], 0.0 if turbine else below))
 
 
 # ---------------------------------------------------------------- units from the site file

@@ -476,6 +476,34 @@ electrical: {generator_efficiency: 0.95, transformer_efficiency: 0.99}
     return path
 
 
+def water_joining_below(folder: Path) -> Path:
+    """A gauge moved by mean flows, and a brook that lifts the tailwater below a long diversion."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Otter Reach}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+  transfer: {method: mean_ratio, gauge_mean: 7.5, site_mean: 6.0}
+  inflow_below_intake: {discharge: 1.8}
+environmental_flow:
+  - {rule: mean_share, share: 0.1}
+head:
+  headwater: {table: [[0, 88.2], [30, 88.8]]}
+  tailwater: {rating: {zero_level: 84.1, coefficient: 9, exponent: 1.6}}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 5.5
+    rated_head: 3.1
+electrical: {generator_efficiency: 0.94, own_use: 0.8}
+""",
+    )
+    write_record(folder / "flow.csv", 27, "1997-10-01", "2001-09-30", 7.5, 0.8)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -525,6 +553,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         three_francis_steep,
         derived_ratings,
         calendar_years_and_transfer,
+        water_joining_below,
         outages,
     )
 }

@@ -17,11 +17,13 @@ from hydroyield.quantities import W_PER_KW, WH_PER_MWH
 from hydroyield.river import (
     Calendar,
     Cells,
-    characteristic_discharge,
+    cells_of_table,
     condense,
     quantile,
     usable_years,
 )
+from hydroyield.river.duration import usual_characteristic, usual_exceedances
+from hydroyield.river.views import RiverViews
 from hydroyield.river.years import count_months
 
 if TYPE_CHECKING:
@@ -29,8 +31,6 @@ if TYPE_CHECKING:
 
 Floats = NDArray[np.float64]
 
-EXCEEDANCES = (1, 5, 10, 20, 30, 40, 50, 60, 70, 80, 90, 95, 99)  # %
-CHARACTERISTIC_DAYS = (10, 30, 90, 180, 270, 355)
 CURVE_STEPS = 400  # rows of a curve, less one
 
 
@@ -85,35 +85,69 @@ class Estimate:
     # --- by year and month ----------------------------------------------------------------------
 
     @property
+    def has_years(self) -> bool:
+        """Whether the river is known day by day; a duration table knows no years and months."""
+        return self.scheme.dates is not None
+
+    @property
     def monthly_energy_mwh(self) -> list[float]:
-        """Mean energy of each calendar month, January first [MWh]."""
+        """Mean energy of each calendar month, January first [MWh]; none without `has_years`."""
+        if not self.has_years:
+            return []
         return [float(mean) for mean in self.energy_by_month.mean(axis=0) / WH_PER_MWH]
 
     @property
     def yearly_energy_mwh(self) -> dict[str, float]:
-        """Energy of each year used, by the calendar year in which it ends [MWh]."""
+        """Energy of each year used, by the calendar year in which it ends [MWh].
+
+        Empty without `has_years`.
+        """
         totals = self.energy_by_month.sum(axis=1) / WH_PER_MWH
-        return {
-            str(year): float(total) for year, total in zip(self.cells.years, totals, strict=True)
-        }
+        return dict(zip(self.years_used, map(float, totals), strict=self.has_years))
 
     @property
     def years_used(self) -> list[str]:
-        return [str(year) for year in self.cells.years]
+        return [str(year) for year in self.cells.years] if self.has_years else []
+
+    @cached_property
+    def filled_days(self) -> dict[str, int]:
+        """Days of each year used whose discharge was estimated from a reference."""
+        scheme = self.scheme
+        if scheme.dates is None or scheme.filled is None:
+            return dict.fromkeys(self.years_used, 0)
+        year = Calendar.of(scheme.dates, scheme.year_start_month).year[scheme.filled]
+        return {name: int((year == int(name)).sum()) for name in self.years_used}
+
+    @property
+    def filled_share(self) -> float:
+        """Share of the days of the years used whose discharge was estimated from a reference."""
+        return sum(self.filled_days.values()) / self.cells.cell_of_day.size
 
     # --- the river ------------------------------------------------------------------------------
+
+    @cached_property
+    def views(self) -> RiverViews | None:
+        """Statistics of the river at the site; None with a duration table."""
+        scheme = self.scheme
+        if scheme.dates is None:
+            return None
+        return RiverViews(
+            scheme.dates,
+            scheme.discharge,
+            scheme.year_start_month,
+            scheme.minimum_month_coverage,
+            scheme.filled,
+        )
 
     @property
     def exceedance_discharge_m3s(self) -> dict[str, float]:
         """Discharge equalled or exceeded in so many per cent of the time, all valid days [m3/s]."""
-        values = quantile(self.scheme.valid_discharge, EXCEEDANCES)
-        return {str(p): float(q) for p, q in zip(EXCEEDANCES, values, strict=True)}
+        return usual_exceedances(self.scheme.valid_discharge)
 
     @property
     def characteristic_discharge_m3s(self) -> dict[str, float]:
         """Discharge equalled or exceeded on so many days of a year, all valid days [m3/s]."""
-        values = characteristic_discharge(self.scheme.valid_discharge, CHARACTERISTIC_DAYS)
-        return {str(d): float(q) for d, q in zip(CHARACTERISTIC_DAYS, values, strict=True)}
+        return usual_characteristic(self.scheme.valid_discharge)
 
     @property
     def environmental_flow_mean_m3s(self) -> float:
@@ -228,12 +262,19 @@ def estimate_energy(scheme: Scheme) -> Estimate:
     Raises ComputationError where no hydrological year can be used; the message says which months
     are short of values.
     """
+    if scheme.dates is None:
+        cells = cells_of_table(scheme.discharge, scheme.rules.season_of_month)
+        return _run(scheme, cells, {})
     calendar = Calendar.of(scheme.dates, scheme.year_start_month)
     months = count_months(calendar, ~np.isnan(scheme.discharge))
     used, left_out = usable_years(months, scheme.minimum_month_coverage, scheme.year_start_month)
     if not used.any():
         raise NoUsableYearError(left_out)
     cells = condense(scheme.discharge, calendar, months, used, scheme.rules.season_of_month)
+    return _run(scheme, cells, left_out)
+
+
+def _run(scheme: Scheme, cells: Cells, left_out: dict[str, str]) -> Estimate:
     operation = scheme.operate(cells.discharge, cells.season)
     power = scheme.net_power(operation.output)
     return Estimate(scheme, cells, operation, power, cells.by_month(power), left_out)

@@ -20,22 +20,26 @@ Ints = NDArray[np.int64]
 class Scheme:
     """All that energy depends on.
 
-    dates : (n,) every day of the record, datetime64[D]
-    discharge : (n,) river discharge at the site, nan where missing [m3/s]
+    dates : (n,) every day of the record, datetime64[D]; None where only the duration curve of the
+        river is known
+    discharge : (n,) river discharge at the site, nan where missing [m3/s]; without dates the
+        values at even steps of the duration curve
     rules : what stays in the river or is taken by others
     heads : levels and losses
     plant : the machines
     year_start_month : first month of the hydrological year
     minimum_month_coverage : share of the days of a month that need a value
+    filled : (n,) days whose discharge was estimated from a reference; None where none was
     """
 
-    dates: NDArray[np.datetime64]
+    dates: NDArray[np.datetime64] | None
     discharge: Floats
     rules: WaterRules
     heads: Heads
     plant: Plant
     year_start_month: int = 10
     minimum_month_coverage: float = 0.9
+    filled: NDArray[np.bool_] | None = None
 
     @cached_property
     def valid_discharge(self) -> Floats:

@@ -2,34 +2,45 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 
 from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
+from hydroyield.evidence.doubts import Doubt, Rerun, doubt_checks
 from hydroyield.evidence.machines import machine_checks
+from hydroyield.evidence.other_days import day_checks
 from hydroyield.hydraulics import Weir
 from hydroyield.hydraulics.levels import range_covered
-from hydroyield.record import Receipt
+from hydroyield.record import Record
 from hydroyield.site.assembly import Assembled
 from hydroyield.site.notes import left_out, without_source
 from hydroyield.site.reading import SiteDescription
+from hydroyield.site.river_assembly import river_checks
 
 FEWEST_YEARS = 10  # common practice: fewer years do not show the spread of wet and dry
-TRUSTED_AREA_RATIO = (0.5, 1.5)  # USGS SIR 2008-5126, for gauges on the same stream
 USUAL_CAPACITY_FACTOR = (0.2, 0.85)  # run-of-river plants, common practice
 LARGEST_SHARE_OUTSIDE = 0.02  # of the days beyond a surveyed level
 
 
 def audit(
-    site: SiteDescription, receipt: Receipt, assembled: Assembled, estimate: Estimate
+    site: SiteDescription,
+    record: Record | None,
+    assembled: Assembled,
+    estimate: Estimate,
+    doubts: Sequence[Doubt],
+    reruns: Sequence[Rerun],
 ) -> tuple[Check, ...]:
-    """Hold a result and its input against what is usual."""
+    """Hold a result and its input against what is usual.
+
+    record : at the gauge, as it was read; None with a duration table
+    doubts, reruns : about the record, and what they would change
+    """
     return (
-        *receipt.checks,
-        _years(estimate),
-        *_transfer(site),
+        *(_of_record(record, assembled, estimate) if record is not None else ()),
+        *doubt_checks(doubts, reruns),
+        *river_checks(site.model, assembled.river),
         *_levels(estimate),
         *_left_out(site),
         *machine_checks(site, assembled, estimate),
@@ -38,6 +49,12 @@ def audit(
         _cross_check(estimate),
         _sources(site),
     )
+
+
+def _of_record(record: Record, assembled: Assembled, estimate: Estimate) -> Iterator[Check]:
+    yield from record.receipt.checks
+    yield _years(estimate)
+    yield from day_checks(record, assembled.river.transfer.factor, estimate)
 
 
 def _years(estimate: Estimate) -> Check:
@@ -54,27 +71,10 @@ def _years(estimate: Estimate) -> Check:
     )
 
 
-def _transfer(site: SiteDescription) -> Iterator[Check]:
-    transfer = site.model.discharge.transfer
-    if transfer is None:
-        return
-    ratio = transfer.site_area / transfer.gauge_area
-    low, high = TRUSTED_AREA_RATIO
-    yield warn_unless(
-        "area_ratio",
-        low <= ratio <= high,
-        ratio,
-        low if ratio < low else high,
-        f"The site drains {ratio:.2f} times the area of the gauge.",
-        f"The site drains {ratio:.2f} times the area of the gauge; the method is trusted from "
-        f"{low:g} to {high:g} on the same stream (USGS SIR 2008-5126). Gauge the site itself.",
-    )
-
-
 def _levels(estimate: Estimate) -> Iterator[Check]:
     scheme, cells, run = estimate.scheme, estimate.cells, estimate.operation
     rules = scheme.rules
-    below = cells.discharge - rules.unreturned[cells.season]
+    below = scheme.heads.below(cells.discharge, rules.unreturned[cells.season])
     followed = run.turbined if scheme.heads.follows_turbine else below
     for side, level, seen in (
         ("headwater", scheme.heads.headwater, cells.discharge),

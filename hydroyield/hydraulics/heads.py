@@ -26,12 +26,23 @@ class Heads:
     follows_turbine : the tailwater follows the turbine discharge (a separate tailrace) and not
         the river
     loss_coefficient : k of h = k Q^2, Q of the whole plant [m per (m3/s)^2]
+    inflow_below_intake : water that joins between intake and tailwater, as a share of the river
+        discharge at the intake
     """
 
     headwater: Level
     tailwater: Level
     follows_turbine: bool = False
     loss_coefficient: float = 0.0
+    inflow_below_intake: float = 0.0
+
+    def below(self, discharge: Floats, unreturned: Floats) -> Floats:
+        """River discharge at the tailwater [m3/s].
+
+        discharge : (n,) at the intake [m3/s]
+        unreturned : (n,) abstractions that do not come back above the tailwater [m3/s]
+        """
+        return np.maximum(0.0, discharge * (1 + self.inflow_below_intake) - unreturned)
 
     def at(self, discharge: Floats, abstracted: Floats, unreturned: Floats) -> HeadState:
         """The levels at given states of the river.
@@ -41,12 +52,13 @@ class Heads:
         unreturned : (n,) abstractions that do not come back above the tailwater [m3/s]
         """
         over_weir = isinstance(self.headwater, Weir)
-        below = np.maximum(0.0, discharge - unreturned)
         return HeadState(
             self,
             after_abstraction=discharge - abstracted if over_weir else None,
             fixed_headwater=None if over_weir else self.headwater(discharge),
-            fixed_tailwater=None if self.follows_turbine else self.tailwater(below),
+            fixed_tailwater=None
+            if self.follows_turbine
+            else self.tailwater(self.below(discharge, unreturned)),
         )
 
 

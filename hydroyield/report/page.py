@@ -5,18 +5,19 @@ What it says is gathered here as plain data; the template only lays it out and e
 
 from __future__ import annotations
 
-import base64
 import datetime
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Any
 
 import hydroyield
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.report import words
-from hydroyield.report.result import CAUTION
-from hydroyield.report.summary import LEDGER_NAMES
+from hydroyield.report.drawn import DrawnFigure, rendered
+from hydroyield.report.record_result import digests
+from hydroyield.report.record_words import receipt_rows, reference_rows, river_rows, year_rows
+from hydroyield.report.result import CAUTION, WITHOUT_DAYS
+from hydroyield.report.summary import LEDGER_NAMES, UNSEEN
 from hydroyield.river.years import MONTH_NAMES
 from hydroyield.site.notes import filled_in, left_out, to_derive, without_source
 
@@ -54,38 +55,9 @@ METHODS = (
 )
 
 
-@dataclass(frozen=True)
-class DrawnFigure:
-    """A figure for the page.
-
-    name, title : as in its `FigureSpec`
-    alt : what it shows, in words with numbers
-    svg : the drawing
-    """
-
-    name: str
-    title: str
-    alt: str
-    svg: str
-
-    @property
-    def data(self) -> str:
-        """The drawing as the data of an image in the page."""
-        return base64.b64encode(self.svg.encode()).decode()
-
-
 def page(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> str:
     """The page as HTML, self-contained; all user text is escaped."""
-    from jinja2 import Environment, PackageLoader, StrictUndefined
-
-    templates = Environment(
-        loader=PackageLoader("hydroyield.report", "templates"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
-    return templates.get_template("report.html.j2").render(page_data(estimate, figures))
+    return rendered("report.html.j2", page_data(estimate, figures))
 
 
 def page_data(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> dict[str, Any]:
@@ -104,8 +76,11 @@ def page_data(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> dict[st
         "years": _years(estimate),
         "months": [
             (month, words.energy(mwh).removesuffix(" MWh"))
-            for month, mwh in zip(MONTH_NAMES, estimate.monthly_energy_mwh, strict=True)
+            for month, mwh in zip(MONTH_NAMES, estimate.monthly_energy_mwh, strict=False)
         ],
+        "river_years": [] if estimate.views is None else year_rows(estimate.views),
+        "river_facts": [] if estimate.views is None else river_rows(estimate.views),
+        "other_readings": _other_readings(estimate),
         "river": _river(estimate),
         "ledger": _ledger(estimate),
         "reference_head": words.head(estimate.reference_head_m),
@@ -118,7 +93,11 @@ def page_data(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> dict[st
 def _headline(estimate: SiteEstimate) -> Rows:
     units = " + ".join(f"{g.count} x {g.type}" for g in estimate.scheme.plant.groups)
     return [
-        ("Mean annual energy", words.energy(estimate.mean_annual_energy_mwh), "net, to the grid"),
+        (
+            "Mean annual energy",
+            words.energy(estimate.mean_annual_energy_mwh),
+            words.filled(estimate) or "net, to the grid",
+        ),
         ("Capacity factor", words.percent(estimate.capacity_factor), "of installed capacity"),
         ("Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW", units),
         (
@@ -130,13 +109,18 @@ def _headline(estimate: SiteEstimate) -> Rows:
 
 
 def _answer(estimate: SiteEstimate) -> str:
-    ranked = words.ranked_years(estimate)
-    (dry, least), (wet, most) = ranked[0], ranked[-1]
     full = estimate.mean_annual_energy_mwh * W_PER_KW / estimate.installed_capacity_kw
     text = (
         f"In a mean year the plant delivers {words.energy(estimate.mean_annual_energy_mwh)}, as "
         f"much as {rounded(full)} hours at full capacity. "
     )
+    if not estimate.has_years:
+        return text + (
+            "The river is known by a duration table alone, so nothing can be said of single years "
+            "and months."
+        )
+    ranked = words.ranked_years(estimate)
+    (dry, least), (wet, most) = ranked[0], ranked[-1]
     if len(ranked) == 1:
         return text + f"This rests on one year only, {words.year_name(estimate, dry)}."
     return text + (
@@ -147,24 +131,12 @@ def _answer(estimate: SiteEstimate) -> str:
 
 
 def _basis(estimate: SiteEstimate) -> Rows:
-    model, record = estimate.site.model, estimate.record
-    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
-    rows: Rows = [
-        ("Record", f"{record.file.rpartition('/')[2]}, {record.first} to {record.last}"),
-        (
-            "Days",
-            f"{record.days} with a value, {record.missing_days} missing; {record.rows_used} of "
-            f"{record.rows_read} rows used",
-        ),
-        ("Format of the record", record.file_format),
-        ("Unit of the record", f"{record.unit} (from the {record.unit_source})"),
-        ("From gauge to site", words.transfer(model)),
-        ("Years used", f"{len(estimate.years_used)}, {first} to {last}"),
-        *(
-            (f"Left out: {words.year_name(estimate, year)}", reason)
-            for year, reason in estimate.years_left_out.items()
-        ),
-    ]
+    model = estimate.site.model
+    rows: Rows = [*_of_record(estimate), ("From gauge to site", words.transfer(estimate))]
+    if estimate.has_years:
+        rows += _years_used(estimate)
+    if words.inflow_below(model):
+        rows.append(("Inflow between intake and tailwater", words.inflow_below(model)))
     rules = words.environmental_flow(model)
     title = "Environmental flow" + (", the largest of" if len(rules) > 1 else "")
     rows.append((title, "; ".join(rules) or "none stated"))
@@ -180,6 +152,32 @@ def _basis(estimate: SiteEstimate) -> Rows:
         ("Shutdown", f"above {words.discharge(shutdown)} in the river" if shutdown else "none")
     )
     return rows
+
+
+def _of_record(estimate: SiteEstimate) -> Rows:
+    if estimate.measured is None:
+        table = estimate.site.model.discharge.duration_table or ()
+        return [
+            ("Record", f"none: a duration table of {len(table)} points"),
+            ("Energy by year and month", f"absent: {WITHOUT_DAYS}"),
+        ]
+    rows = receipt_rows(estimate.measured)
+    if estimate.reference is not None and estimate.river.lengthened is not None:
+        rows += reference_rows(estimate.reference, estimate.river.lengthened)
+    if words.filled(estimate):
+        rows.append(("Filled days", words.filled(estimate)))
+    return rows
+
+
+def _years_used(estimate: SiteEstimate) -> Rows:
+    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
+    return [
+        ("Years used", f"{len(estimate.years_used)}, {first} to {last}"),
+        *(
+            (f"Left out: {words.year_name(estimate, year)}", reason)
+            for year, reason in estimate.years_left_out.items()
+        ),
+    ]
 
 
 def _turbines(estimate: SiteEstimate) -> Rows:
@@ -217,10 +215,11 @@ def _assumptions(estimate: SiteEstimate) -> list[tuple[str, list[str]]]:
 
 
 def _years(estimate: SiteEstimate) -> Rows:
-    mean = estimate.mean_annual_energy_mwh
+    mean, filled = estimate.mean_annual_energy_mwh, estimate.filled_days
     return [
         (
-            words.year_name(estimate, year),
+            words.year_name(estimate, year)
+            + (f" ({filled[year]} d filled)" if filled[year] else ""),
             rounded(mwh),
             f"{100 * (mwh / mean - 1):+.0f} %" if mean else "",
         )
@@ -249,15 +248,29 @@ def _ledger(estimate: SiteEstimate) -> Rows:
             f"{100 * mwh / gross:.1f} %" if gross else "",
         )
         for step, mwh in rows
-        if mwh or step in ("gross", "net")
+        if abs(mwh) > UNSEEN * gross or step in ("gross", "net")
     ]
 
 
 def _provenance(estimate: SiteEstimate) -> Rows:
-    site, record = estimate.site, estimate.record
+    site = estimate.site
+    read = {site.path.name: site.sha256}
+    for record in (estimate.measured, estimate.reference):
+        read |= {} if record is None else digests(record.receipt)
     return [
         ("Computed by", f"hydroyield {hydroyield.__version__}"),
         ("Computed on", datetime.date.today().isoformat()),
-        (f"SHA-256 of {site.path.name}", site.sha256),
-        (f"SHA-256 of {record.file.rpartition('/')[2]}", record.sha256),
+        *((f"SHA-256 of {name.rpartition('/')[2]}", digest) for name, digest in read.items()),
+    ]
+
+
+def _other_readings(estimate: SiteEstimate) -> Rows:
+    """What each doubt about the record would change."""
+    return [
+        (
+            run.treatment,
+            "no year left" if run.energy_mwh is None else rounded(run.energy_mwh),
+            "" if run.change is None else f"{100 * run.change:+.1f} %",
+        )
+        for run in estimate.reruns
     ]

@@ -8,6 +8,13 @@ from typing import Any
 import hydroyield
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW
+from hydroyield.report.record_result import (
+    digests,
+    receipt_facts,
+    reference_facts,
+    river_facts,
+    series_facts,
+)
 from hydroyield.site.notes import Note, filled_in, left_out, to_derive, without_source
 
 FORMAT = 1
@@ -23,11 +30,13 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
         "mean_annual_energy_mwh": estimate.mean_annual_energy_mwh,
         "capacity_factor": estimate.capacity_factor,
         "duration_integral_energy_mwh": estimate.duration_integral_energy_mwh,
-        "monthly_energy_mwh": estimate.monthly_energy_mwh,
-        "yearly_energy_mwh": estimate.yearly_energy_mwh,
+        "monthly_energy_mwh": estimate.monthly_energy_mwh or None,
+        "yearly_energy_mwh": estimate.yearly_energy_mwh or None,
         "years_used": estimate.years_used,
         "years_left_out": estimate.years_left_out,
+        "absent": {} if estimate.has_years else dict.fromkeys(NEED_DAYS, WITHOUT_DAYS),
         "record": _record(estimate),
+        "river": None if estimate.views is None else river_facts(estimate.views),
         "exceedance_discharge_m3s": estimate.exceedance_discharge_m3s,
         "characteristic_discharge_m3s": estimate.characteristic_discharge_m3s,
         "environmental_flow_mean_m3s": estimate.environmental_flow_mean_m3s,
@@ -48,13 +57,18 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
             "version": hydroyield.__version__,
             "sha256": {
                 estimate.site.path.name: estimate.site.sha256,
-                estimate.record.file: estimate.record.sha256,
+                **(digests(estimate.record) if estimate.record else {}),
+                **(digests(estimate.reference.receipt) if estimate.reference else {}),
             },
             "seed": None,
         },
     }
 
 
+NEED_DAYS = ("monthly_energy_mwh", "yearly_energy_mwh", "years_used", "river")
+WITHOUT_DAYS = (
+    "the river is known by a duration table alone, which does not say when which discharge occurs"
+)
 CAUTION = (
     "A pre-feasibility estimate, not a design. Local codes, permits and licensed engineers have "
     "the last word; see SAFETY.md."
@@ -62,25 +76,57 @@ CAUTION = (
 
 
 def _record(estimate: SiteEstimate) -> dict[str, Any]:
-    receipt = estimate.record
+    if estimate.measured is None or estimate.views is None:
+        return _table_facts(estimate)
+    river, years = estimate.river, estimate.filled_days
+    facts = series_facts(estimate.views, "site") | receipt_facts(estimate.measured)
+    facts |= {
+        "yearly_filled_days": {year: days for year, days in years.items() if days},
+        "filled_share": estimate.filled_share,
+        "transfer": _transfer(estimate),
+        "other_readings": [
+            {
+                "check": run.name,
+                "treatment": run.treatment,
+                "energy_mwh": run.energy_mwh,
+                "change_share": run.change,
+            }
+            for run in estimate.reruns
+        ],
+    }
+    if estimate.reference is not None and river.lengthened is not None:
+        facts["reference"] = reference_facts(estimate.reference, river.lengthened)
+    return facts
+
+
+def _table_facts(estimate: SiteEstimate) -> dict[str, Any]:
+    """A duration table has no days."""
+    nothing = dict.fromkeys(("first", "last", "days", "missing_days"))
     return {
         "location": "site",
-        "first": str(receipt.first),
-        "last": str(receipt.last),
-        "days": receipt.days,
-        "missing_days": receipt.missing_days,
-        "mean_m3s": float(estimate.scheme.valid_discharge.mean()),
-        "file": receipt.file,
-        "file_format": receipt.file_format,
-        "station": receipt.station,
-        "flags": receipt.flags,
-        "unit": receipt.unit,
-        "unit_source": receipt.unit_source,
-        "date_format": receipt.date_format,
-        "rows_read": receipt.rows_read,
-        "rows_used": receipt.rows_used,
-        "rows_dropped": {kind.reason: kind.count for kind in receipt.dropped},
+        **nothing,
+        "mean_m3s": float(estimate.scheme.discharge.mean()),
+        "transfer": _transfer(estimate),
     }
+
+
+def _transfer(estimate: SiteEstimate) -> dict[str, Any]:
+    transfer, fit = estimate.river.transfer, estimate.river.spot_fit
+    facts = {
+        "method": transfer.method,
+        "transfer_factor": transfer.factor,
+        "uncertainty_share": transfer.relative_uncertainty,
+        "uncertainty_basis": transfer.basis,
+    }
+    if fit is not None:
+        facts["spot_gaugings"] = {
+            "transfer_factor": fit.factor,
+            "uncertainty_share": fit.standard_error,
+            "count": fit.used,
+            "without_record": list(fit.without_record),
+            "zero": list(fit.zero),
+        }
+    return facts
 
 
 def _turbines(estimate: SiteEstimate) -> list[dict[str, Any]]:

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from typing import TYPE_CHECKING
 
-from hydroyield.jobs import SiteEstimate
+from hydroyield.checks import Check
+from hydroyield.jobs import SiteEstimate, not_passed
 from hydroyield.quantities import rounded
 from hydroyield.report import words
 from hydroyield.report.result import CAUTION
@@ -16,6 +17,7 @@ if TYPE_CHECKING:
     from rich.table import Table
 
 WIDTH_WITHOUT_TERMINAL = 100  # columns
+UNSEEN = 1e-9  # share of the gross energy, rounding alone
 STYLE_OF_OUTCOME = {"warn": "yellow", "fail": "bold red"}
 
 LEDGER_NAMES = {
@@ -40,12 +42,13 @@ LEDGER_NAMES = {
 
 def print_summary(estimate: SiteEstimate, console: Console | None = None) -> None:
     """Print the summary: in colour where a terminal is, plain where none is."""
-    console = console or _console()
+    console = console or default_console()
     for part in summary(estimate):
         console.print(part)
 
 
-def _console() -> Console:
+def default_console() -> Console:
+    """A console that is as wide as the terminal, and of a fixed width where none is."""
     from rich.console import Console
 
     console = Console(highlight=False)
@@ -59,10 +62,11 @@ def summary(estimate: SiteEstimate) -> Iterator[RenderableType]:
     from rich.text import Text
 
     yield Text(estimate.site.name, style="bold")
-    yield _headline(estimate)
+    yield facts_table(_facts(estimate))
     yield ""
-    yield _months(estimate)
-    yield ""
+    if estimate.has_years:
+        yield _months(estimate)
+        yield ""
     yield Text(
         "From gross to net, MWh a year; water valued at a head of "
         + words.head(estimate.reference_head_m),
@@ -70,50 +74,59 @@ def summary(estimate: SiteEstimate) -> Iterator[RenderableType]:
     )
     yield _ledger(estimate)
     yield ""
-    yield from _checks(estimate)
+    yield from checks_found(estimate.checks)
     yield ""
     yield Text(CAUTION)
 
 
-def _headline(estimate: SiteEstimate) -> Table:
+def facts_table(rows: Iterable[tuple[str, ...]]) -> Table:
+    """(what, value) in two columns."""
     table = _plain_table("bold", "")
-    for name, value in _facts(estimate):
+    for name, value in rows:
         table.add_row(name, _text(value))
     return table
 
 
 def _facts(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
-    ranked = words.ranked_years(estimate)
-    (driest, least), (wettest, most) = ranked[0], ranked[-1]
-    record, out = estimate.record, len(estimate.years_left_out)
     units = " + ".join(f"{g.count} x {g.type}" for g in estimate.scheme.plant.groups)
-    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
-    q = estimate.exceedance_discharge_m3s
-    mean = float(estimate.scheme.valid_discharge.mean())
     yield "Mean annual energy", words.energy(estimate.mean_annual_energy_mwh)
+    if words.filled(estimate):
+        yield "", words.filled(estimate)
     yield "Capacity factor", words.percent(estimate.capacity_factor)
     yield "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, {units}"
     yield "Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW"
-    yield (
-        "Years",
-        f"{len(estimate.years_used)} used, {first} to {last}"
-        + (f"; {out} left out" if out else ""),
-    )
-    yield (
-        "Driest and wettest",
-        f"{words.energy(least)} ({words.year_name(estimate, driest)}), "
-        f"{words.energy(most)} ({words.year_name(estimate, wettest)})",
-    )
-    yield (
-        "Record",
-        f"{record.file}, {record.first} to {record.last}, {record.missing_days} days missing",
-    )
+    if estimate.has_years:
+        yield from _years(estimate)
+    yield "Record", _record(estimate)
+    q = estimate.exceedance_discharge_m3s
+    mean = float(estimate.scheme.valid_discharge.mean())
     yield (
         "River at the site",
         f"mean {words.discharge(mean)}, Q50 {words.discharge(q['50'])}, "
         f"Q95 {words.discharge(q['95'])}",
     )
     yield "Kept in the river", f"{words.discharge(estimate.environmental_flow_mean_m3s)} on average"
+
+
+def _years(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
+    ranked, out = words.ranked_years(estimate), len(estimate.years_left_out)
+    (driest, least), (wettest, most) = ranked[0], ranked[-1]
+    first, last = (words.year_name(estimate, estimate.years_used[i]) for i in (0, -1))
+    left_out = f"; {out} left out" if out else ""
+    yield "Years", f"{len(estimate.years_used)} used, {first} to {last}{left_out}"
+    yield (
+        "Driest and wettest",
+        f"{words.energy(least)} ({words.year_name(estimate, driest)}), "
+        f"{words.energy(most)} ({words.year_name(estimate, wettest)})",
+    )
+
+
+def _record(estimate: SiteEstimate) -> str:
+    record = estimate.record
+    if record is None:
+        return "none: a duration table, so no energy by year and month"
+    days = f"{record.first} to {record.last}, {record.missing_days} days missing"
+    return f"{record.file}, {days}"
 
 
 def _text(value: str) -> RenderableType:
@@ -154,7 +167,7 @@ def _ledger(estimate: SiteEstimate) -> Table:
     gross = rows[0][1]
     for step, mwh in rows:
         total = step in ("gross", "net")
-        if mwh or total:
+        if abs(mwh) > UNSEEN * gross or total:
             sign = "" if total else ("+" if mwh > 0 else "-")
             share = f"{100 * mwh / gross:.1f} %" if gross else ""
             style = "bold" if total else ""
@@ -162,12 +175,12 @@ def _ledger(estimate: SiteEstimate) -> Table:
     return table
 
 
-def _checks(estimate: SiteEstimate) -> Iterator[RenderableType]:
+def checks_found(checks: Sequence[Check]) -> Iterator[RenderableType]:
+    """How many checks passed, and those that did not."""
     from rich.text import Text
 
-    found = estimate.warnings()
-    passed = len(estimate.checks) - len(found)
-    yield Text(f"Checks: {passed} passed, {len(found)} to look at", style="bold")
+    found = not_passed(checks)
+    yield Text(f"Checks: {len(checks) - len(found)} passed, {len(found)} to look at", style="bold")
     table = _plain_table("", "")
     for check in found:
         outcome = Text(check.outcome, style=STYLE_OF_OUTCOME[check.outcome])

@@ -19,7 +19,9 @@ def understood(site: SiteDescription) -> dict[str, Any]:
         "to_derive": to_derive(site),
         "left_out": {note.key: note.text for note in left_out(site)},
         "without_source": without_source(site),
-        "record_found": site.record_path.exists(),
+        "records_missing": [
+            str(path) for path in (*site.record_paths, *site.reference_paths) if not path.exists()
+        ],
     }
 
 
@@ -37,8 +39,8 @@ def understood_text(site: SiteDescription) -> str:
     if facts["without_source"]:
         lines += ["", "Without a source, so taken as assumptions:"]
         lines += [f"  {name}" for name in facts["without_source"]]
-    if not facts["record_found"]:
-        lines += ["", f"The record {site.record_path} is not there yet; estimate needs it."]
+    for path in facts["records_missing"]:
+        lines += ["", f"The record {path} is not there yet; estimate needs it."]
     return "\n".join(lines)
 
 

@@ -8,6 +8,7 @@ from typing import Any
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.years import MONTH_NAMES, span
+from hydroyield.site.discharge_models import Transfer
 from hydroyield.site.models import SiteFile
 
 KM2 = 1e6  # m2
@@ -86,15 +87,51 @@ def abstractions(model: SiteFile) -> list[str]:
     ]
 
 
-def transfer(model: SiteFile) -> str:
-    """How the record was moved to the site."""
-    moved = model.discharge.transfer
-    if moved is None:
+def transfer(estimate: SiteEstimate) -> str:
+    """How the record was moved to the site, and how well that is known."""
+    stated, used = estimate.site.model.discharge.transfer, estimate.river.transfer
+    if stated is None:
         return "none: the record counts as that of the site"
+    if used.relative_uncertainty is None:
+        known = "its uncertainty is not stated"
+    else:
+        known = f"standard uncertainty {100 * used.relative_uncertainty:.1f} % ({used.basis})"
+    return f"{_way_to_site(stated)}: factor {used.factor:.4g}, {known}"
+
+
+def _way_to_site(stated: Transfer) -> str:
+    if stated.method == "spot_gaugings":
+        return "by spot gaugings at the site against the record of the same days"
+    if stated.method == "mean_ratio":
+        assert stated.site_mean  # the site file is refused without
+        assert stated.gauge_mean
+        return (
+            f"by mean discharge, {discharge(stated.site_mean)} at the site to "
+            f"{discharge(stated.gauge_mean)} at the gauge"
+        )
+    assert stated.site_area  # the site file is refused without
+    assert stated.gauge_area
     return (
-        f"by catchment area, {rounded(moved.site_area / KM2)} km2 at the site to "
-        f"{rounded(moved.gauge_area / KM2)} km2 at the gauge, exponent {moved.exponent:g}"
+        f"by catchment area, {rounded(stated.site_area / KM2)} km2 at the site to "
+        f"{rounded(stated.gauge_area / KM2)} km2 at the gauge, exponent {stated.exponent:g}"
     )
+
+
+def filled(estimate: SiteEstimate) -> str:
+    """The share of the days that a reference gave, beside the headline; "" where there is none."""
+    share = estimate.filled_share
+    return f"{100 * share:.1f} % of the days used filled from a reference" if share else ""
+
+
+def inflow_below(model: SiteFile) -> str:
+    """Water that joins between intake and tailwater, in one phrase; "" without any."""
+    block = model.discharge.inflow_below_intake
+    if block is None:
+        return ""
+    if block.discharge is not None:
+        return f"{discharge(block.discharge)} on average, rising and falling with the river"
+    assert block.area is not None  # one of the two is given
+    return f"from {rounded(block.area / KM2)} km2, as much per area as above the intake"
 
 
 def headwater(model: SiteFile) -> str:

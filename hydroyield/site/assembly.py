@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -30,13 +30,13 @@ from hydroyield.hydraulics import (
 from hydroyield.hydraulics.levels import Level
 from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, Plant, machine_types
-from hydroyield.record import Record, RecordOptions
 from hydroyield.river import Abstraction, InflowShare, WaterRules, quantile
 from hydroyield.site.head_models import Head, Headwater, Tailwater
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
 from hydroyield.site.plant_models import TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
+from hydroyield.site.river_assembly import RiverAtSite, inflow_below_intake
 
 Floats = NDArray[np.float64]
 MONTHS_PER_YEAR = 12
@@ -48,10 +48,12 @@ class Assembled:
 
     scheme : ready to be computed
     rated_state : where rated values were derived
+    river : where the scheme's discharge comes from
     """
 
     scheme: Scheme
     rated_state: RatedState
+    river: RiverAtSite
 
 
 def read_site(path: str | Path) -> SiteDescription:
@@ -74,54 +76,44 @@ def read_site(path: str | Path) -> SiteDescription:
     return site
 
 
-def record_options(site: SiteDescription) -> RecordOptions:
-    """What the site file says about its record."""
-    record = site.model.discharge.record
-    transfer = site.model.discharge.transfer
-    return RecordOptions(
-        unit=record.unit,
-        date_column=record.date_column,
-        value_column=record.value_column,
-        missing=record.missing,
-        date_order=record.date_order,
-        decimal_mark=record.decimal_mark,
-        file_format=record.file_format,
-        gauge_area_m2=transfer.gauge_area if transfer else None,
-    )
-
-
-def transfer_factor(model: SiteFile) -> float:
-    """Factor from discharge at the gauge to discharge at the site: (area ratio) ^ exponent."""
-    transfer = model.discharge.transfer
-    if transfer is None:
-        return 1.0
-    return float((transfer.site_area / transfer.gauge_area) ** transfer.exponent)
-
-
-def assemble(site: SiteDescription, record: Record) -> Assembled:
+def assemble(site: SiteDescription, river: RiverAtSite) -> Assembled:
     """Build the scheme.
+
+    river : discharge at the site, from `river_at_site`
 
     Raises SiteFileError with the faults that show only with the record: no head at any of its
     discharges, a rated value that cannot be derived, a capacity above what the water holds.
     """
-    model = site.model
-    discharge = record.discharge * transfer_factor(model)
-    valid = discharge[~np.isnan(discharge)]
-    rules, heads = water_rules(model, valid), levels(model)
+    model, valid = site.model, river.valid_discharge
+    rules, heads = water_rules(model, valid), levels(model, valid)
     faults = dry_head_faults(site, heads, np.linspace(0, valid.max(), 400))
     if faults:
         raise SiteFileError(faults)
     plant, state = _plant(site, rules, heads, float(valid.max()))
     scheme = Scheme(
-        dates=record.dates,
-        discharge=discharge,
+        dates=river.dates,
+        discharge=river.discharge,
         rules=rules,
         heads=heads,
         plant=plant,
         year_start_month=model.discharge.year_start_month,
         minimum_month_coverage=model.discharge.minimum_month_coverage,
+        filled=river.filled,
     )
-    return Assembled(scheme, state)
+    return Assembled(scheme, state, river)
+
+
+def with_other_river(site: SiteDescription, scheme: Scheme, river: RiverAtSite) -> Scheme:
+    """The same plant at another series of the river; rules that use its statistics follow it."""
+    valid = river.valid_discharge
+    return replace(
+        scheme,
+        dates=river.dates,
+        discharge=river.discharge,
+        filled=river.filled,
+        rules=water_rules(site.model, valid),
+        heads=levels(site.model, valid),
+    )
 
 
 # --- the river ----------------------------------------------------------------------------------
@@ -163,14 +155,19 @@ def abstractions(model: SiteFile) -> list[Abstraction]:
 # --- levels and losses --------------------------------------------------------------------------
 
 
-def levels(model: SiteFile) -> Heads:
-    """Headwater, tailwater and losses."""
+def levels(model: SiteFile, valid_discharge: Floats | None = None) -> Heads:
+    """Headwater, tailwater and losses.
+
+    valid_discharge : of the river at the site [m3/s]; without it nothing joins below the intake
+    """
+    inflow = 0.0 if valid_discharge is None else inflow_below_intake(model, valid_discharge)
     head: Head = model.head
     return Heads(
         headwater=_headwater(head.headwater),
         tailwater=_tailwater(head.tailwater),
         follows_turbine=head.tailwater.follows == "turbine",
         loss_coefficient=sum(loss.loss_coefficient for loss in model.waterway),
+        inflow_below_intake=inflow,
     )
 
 

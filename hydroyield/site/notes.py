@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY
 from hydroyield.powerhouse import machine_types
 from hydroyield.river.years import MONTH_NAMES
-from hydroyield.site.faults import key_text
+from hydroyield.site.faults import KeyPath, key_text
 from hydroyield.site.reading import SiteDescription
 
 
@@ -31,11 +31,7 @@ def filled_in(site: SiteDescription) -> list[Note]:
     """Values that the tool filled in, as it does for these keys and no others."""
     model = site.model
     notes = [
-        (("discharge", "year_start_month"), MONTH_NAMES[model.discharge.year_start_month - 1]),
-        (
-            ("discharge", "minimum_month_coverage"),
-            f"{100 * model.discharge.minimum_month_coverage:g} %",
-        ),
+        *(_filled_in_for_years(site) if model.discharge.record is not None else ()),
         (("head", "tailwater", "follows"), model.head.tailwater.follows),
         (("head", "minimum_net_head"), "any net head above 0"),
         (("site", "water_temperature"), f"density {STANDARD_DENSITY:g} kg/m3"),
@@ -44,11 +40,23 @@ def filled_in(site: SiteDescription) -> list[Note]:
         notes.append((("site", "latitude"), f"gravity {STANDARD_GRAVITY:g} m/s2"))
     else:
         notes.append((("site", "altitude"), "0 m"))
-    if model.discharge.transfer is not None:
-        exponent = f"{model.discharge.transfer.exponent:g}"
+    transfer = model.discharge.transfer
+    if transfer is not None and transfer.method == "area_ratio":
+        exponent = f"{transfer.exponent:g}"
         notes.append((("discharge", "transfer", "exponent"), exponent))
     found = [Note(key_text(path), text) for path, text in notes if not site.is_given(path)]
     return found + _filled_in_by_type(site)
+
+
+def _filled_in_for_years(site: SiteDescription) -> list[tuple[KeyPath, str]]:
+    discharge = site.model.discharge
+    return [
+        (("discharge", "year_start_month"), MONTH_NAMES[discharge.year_start_month - 1]),
+        (
+            ("discharge", "minimum_month_coverage"),
+            f"{100 * discharge.minimum_month_coverage:g} %",
+        ),
+    ]
 
 
 def _filled_in_by_type(site: SiteDescription) -> list[Note]:

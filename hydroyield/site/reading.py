@@ -46,9 +46,16 @@ class SiteDescription:
         return self.model.site.name
 
     @property
-    def record_path(self) -> Path:
-        """The discharge record; whether it exists is not checked."""
-        return self.folder / self.model.discharge.record.file
+    def record_paths(self) -> tuple[Path, ...]:
+        """The files of the discharge record, none with a duration table; they may not exist."""
+        record = self.model.discharge.record
+        return () if record is None else tuple(self.folder / name for name in record.file)
+
+    @property
+    def reference_paths(self) -> tuple[Path, ...]:
+        """The files of the reference record, none without one; they may not exist."""
+        reference = self.model.discharge.reference
+        return () if reference is None else tuple(self.folder / name for name in reference.file)
 
     def is_given(self, path: KeyPath) -> bool:
         """Whether the file holds this key, so that it was not filled in."""

@@ -24,6 +24,7 @@ from hydroyield.record import Record
 from hydroyield.report.result import result
 from hydroyield.site.assembly import assemble
 from hydroyield.site.reading import SiteDescription, read_site_text
+from hydroyield.site.river_assembly import river_at_site
 
 SITE = """\
 format: 1
@@ -119,7 +120,10 @@ def test_what_is_timed_is_the_whole_energy() -> None:
     whole = series_to_result()()
     assert whole["mean_annual_energy_mwh"] == known().mean_annual_energy_mwh
     assert (len(whole["yearly_energy_mwh"]), known().scheme.discharge.size) == (YEARS, 14_610)
-    assert assemble(site(), Record.from_series(series())).scheme.plant == known().scheme.plant
+    assert (
+        assemble(site(), river_at_site(site(), Record.from_series(series()), None)).scheme.plant
+        == known().scheme.plant
+    )
 
 
 def fastest(call: Callable[[], Any], seconds: float = 1.0) -> float:

@@ -72,7 +72,7 @@ SLIPS: dict[str, tuple[Slip, str]] = {
     "no format": (lambda site: site.pop("format"), "$: 'format' is a required"),
     "another format": (lambda site: site.update(format=2), "$.format: "),
     "no name": (lambda site: site["site"].pop("name"), "$.site: 'name' is a required"),
-    "no record": (lambda site: site["discharge"].pop("record"), "$.discharge: 'record' is"),
+    "no record": (lambda site: site["discharge"].pop("record"), "$.discharge: "),
     "no head": (lambda site: site.pop("head"), "$: 'head' is a required"),
     "no turbines": (lambda site: site.update(turbines=[]), "$.turbines: "),
     "turbines no list": (lambda site: site.update(turbines=site["turbines"][0]), "$.turbines: "),

@@ -16,10 +16,11 @@ from site_examples import BASE, EXAMPLE, IN_METRIC, IN_US_UNITS, SMALLEST
 
 from hydroyield.errors import SiteFileError
 from hydroyield.site import SiteDescription, read_site_file, read_site_text
-from hydroyield.site.discharge_models import RECORD_UNITS, Discharge, Record
+from hydroyield.site.discharge_models import Discharge
 from hydroyield.site.head_models import Head, Headwater, Tailwater
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.plant_models import Electrical, TurbineGroup
+from hydroyield.site.record_models import RECORD_UNITS, Record
 from hydroyield.site.river_models import RULES, ConstantRule
 
 
@@ -220,7 +221,7 @@ def test_description_of_a_file(tmp_path: Path) -> None:
     assert site.file_name == str(path)
     assert site.folder == tmp_path
     assert site.name == "Larkbeck Weir"
-    assert site.record_path == tmp_path / "larkbeck_daily.csv"
+    assert site.record_paths == (tmp_path / "larkbeck_daily.csv",)
     assert site.sha256 == hashlib.sha256(path.read_bytes()).hexdigest()
     path.write_bytes(b"\xef\xbb\xbf" + BASE.encode())  # a byte order mark, as some editors write
     assert read_site_file(path).model == site.model
@@ -337,7 +338,7 @@ def test_every_key_is_documented() -> None:
     schema = SiteFile.model_json_schema()
     assert json.loads(json.dumps(schema)) == schema
     blocks = [schema, *schema["$defs"].values()]
-    assert len(blocks) == 21  # five of them rules
+    assert len(blocks) == 23  # five of them rules
     for block in blocks:
         assert block["additionalProperties"] is False
         assert block["description"].endswith(".")

@@ -16,8 +16,9 @@ from typing import TYPE_CHECKING, Any
 from xml.sax.saxutils import escape
 
 from hydroyield.energy import Estimate
-from hydroyield.report.figures import energy, heads, plant, river, style
+from hydroyield.report.figures import energy, gauge, heads, plant, river, style
 from hydroyield.report.figures.facts import Facts, as_facts
+from hydroyield.river.views import RiverViews
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -37,28 +38,79 @@ class FigureSpec:
 
     name : stem of its file
     title : above the drawing
-    part : what it shows of an estimate
+    part : what it shows of an estimate, or of a record alone
     draw : (axes, part) -> what was drawn; gets a list of axes where it has several
     alt : (part) -> one or two sentences for those who cannot see it
     size : width and height [in]
     left, right : margins [in]
     heights : (part) -> relative heights of its axes, top first; None for a single one
+    needs_days : whether it shows single days, which a duration table does not know
     """
 
     name: str
     title: str
-    part: Callable[[Facts], Any]
+    part: Callable[[Any], Any]
     draw: Callable[[Any, Any], Any]
     alt: Callable[[Any], str]
     size: tuple[float, float] = (7.6, 4.2)
     left: float = 0.72
     right: float = 0.3
     heights: Callable[[Any], tuple[float, ...]] | None = None
+    needs_days: bool = False
 
-    def alt_text(self, estimate: Estimate | Facts) -> str:
+    def alt_text(self, estimate: Estimate | Facts | RiverViews) -> str:
         """One or two sentences with the numbers, for those who cannot see the figure."""
         return self.alt(self.part(as_facts(estimate)))
 
+
+def _views(facts: Facts | RiverViews) -> RiverViews:
+    """The record, of an estimate or alone."""
+    return facts if isinstance(facts, RiverViews) else facts.views
+
+
+RECORD_FIGURES: tuple[FigureSpec, ...] = (
+    FigureSpec(
+        "record_days",
+        "The record, day by day",
+        _views,
+        gauge.draw_days,
+        gauge.alt_days,
+        needs_days=True,
+    ),
+    FigureSpec(
+        "record_gaps",
+        "Months with and without values",
+        _views,
+        gauge.draw_gaps,
+        gauge.alt_gaps,
+        size=(7.6, 4.8),
+        needs_days=True,
+    ),
+    FigureSpec(
+        "annual_duration",
+        "Duration curves of the years",
+        _views,
+        gauge.draw_annual,
+        gauge.alt_annual,
+        needs_days=True,
+    ),
+    FigureSpec(
+        "monthly_discharge",
+        "Discharge by month",
+        _views,
+        gauge.draw_months,
+        gauge.alt_months,
+        needs_days=True,
+    ),
+    FigureSpec(
+        "mass_curve",
+        "Mass curve less the mean flow",
+        _views,
+        gauge.draw_mass,
+        gauge.alt_mass,
+        needs_days=True,
+    ),
+)
 
 FIGURES: tuple[FigureSpec, ...] = (
     FigureSpec(
@@ -113,6 +165,7 @@ FIGURES: tuple[FigureSpec, ...] = (
         energy.draw_years,
         energy.alt_years,
         right=1.05,
+        needs_days=True,
     ),
     FigureSpec(
         "energy_by_month",
@@ -120,6 +173,7 @@ FIGURES: tuple[FigureSpec, ...] = (
         lambda facts: facts.months,
         energy.draw_months,
         energy.alt_months,
+        needs_days=True,
     ),
     FigureSpec(
         "ledger",
@@ -139,18 +193,26 @@ FIGURES: tuple[FigureSpec, ...] = (
         river.alt_hydrographs,
         size=(7.6, 6.4),
         heights=lambda years: (1.0,) * len(years),
+        needs_days=True,
     ),
+    *RECORD_FIGURES,
 )
+
+
+def figures_of(estimate: Estimate | Facts) -> list[FigureSpec]:
+    """The figures that an estimate has; without days those of days are missing."""
+    has_days = as_facts(estimate).estimate.has_years
+    return [spec for spec in FIGURES if has_days or not spec.needs_days]
 
 
 def write_figures(estimate: Estimate | Facts, folder: Path) -> None:
     """Write every figure as NAME.svg into an existing folder."""
     facts = as_facts(estimate)
-    for spec in FIGURES:
+    for spec in figures_of(facts):
         (folder / f"{spec.name}.svg").write_text(figure_svg(spec, facts), "utf-8")
 
 
-def figure_svg(spec: FigureSpec, estimate: Estimate | Facts) -> str:
+def figure_svg(spec: FigureSpec, estimate: Estimate | Facts | RiverViews) -> str:
     """A figure as the text of an SVG element, the same on every run.
 
     It can stand in a file of its own or within a page: ids carry the name of the figure, and
@@ -165,7 +227,7 @@ def figure_svg(spec: FigureSpec, estimate: Estimate | Facts) -> str:
     return _dressed(text.getvalue(), spec, spec.alt_text(facts))
 
 
-def draw_figure(spec: FigureSpec, estimate: Estimate | Facts) -> Figure:
+def draw_figure(spec: FigureSpec, estimate: Estimate | Facts | RiverViews) -> Figure:
     """Draw a figure; to be called within `style.drawing`."""
     from matplotlib.backends.backend_svg import FigureCanvasSVG
     from matplotlib.figure import Figure

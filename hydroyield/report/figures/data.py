@@ -144,10 +144,12 @@ class YearEnergies:
 
     names : the years as people write them
     energy : (y,) [MWh]
+    filled : names of the years with days filled from a reference
     """
 
     names: tuple[str, ...]
     energy: Floats
+    filled: frozenset[str] = frozenset()
 
     @property
     def mean(self) -> float:
@@ -201,6 +203,7 @@ class Hydrograph:
     river, turbined : nan where there is no value [m3/s]
     month_starts : first day of each month, the first day of the year being 0
     months : their names
+    filled : days filled from a reference; None without
     """
 
     kind: str
@@ -210,6 +213,7 @@ class Hydrograph:
     turbined: Floats
     month_starts: tuple[int, ...]
     months: tuple[str, ...]
+    filled: NDArray[np.bool_] | None = None
 
 
 def thinned(x: Floats, y: Floats, dots: int = 1000) -> tuple[Floats, Floats]:

@@ -30,7 +30,7 @@ def draw_years(ax: Axes, years: YearEnergies) -> dict[str, Artist]:
     labels = Labels(ax)
     drawn: dict[str, Artist] = {}
     for at, name, energy in zip(place.tolist(), years.names, years.energy.tolist(), strict=True):
-        drawn[name] = _draw_year(ax, at, energy)
+        drawn[name] = _draw_year(ax, at, energy, name in years.filled)
     drawn["mean"] = ax.axhline(years.mean, color=style.INK, linewidth=1.0, linestyle=(0, (4, 3)))
     ax.annotate(
         f"mean\n{style.quantity(years.mean, 'MWh')}", (1, years.mean),
@@ -40,20 +40,22 @@ def draw_years(ax: Axes, years: YearEnergies) -> dict[str, Artist]:
     every = _step(place.size, labels.frame[2] - labels.frame[0], max(map(len, years.names)))
     ax.set_xticks(place[::every], years.names[::every])
     gaps = np.flatnonzero(np.isnan(years.energy))
+    key = [(drawn[name], "with filled days") for name in sorted(years.filled)[:1]]
     if gaps.size:
-        gap = drawn[years.names[gaps[0]]]
-        labels.key((gap, "left out, too few days with a value"))
+        key.append((drawn[years.names[gaps[0]]], "left out, too few days with a value"))
+    labels.key(*key)
     return drawn
 
 
-def _draw_year(ax: Axes, at: float, energy: float) -> Artist:
+def _draw_year(ax: Axes, at: float, energy: float, filled: bool) -> Artist:
     if np.isnan(energy):
         gap: Artist = ax.axvspan(
             at - BAR / 2, at + BAR / 2, facecolor=style.PAPER, hatch="////", edgecolor="#B4BBC2",
             linewidth=0, zorder=0.5,
         )  # fmt: skip
         return gap
-    bar: Artist = ax.bar(at, energy, BAR, color=style.BLUE)[0]
+    face = style.PALE_BLUE if filled else style.BLUE
+    bar: Artist = ax.bar(at, energy, BAR, color=face, edgecolor=style.BLUE, linewidth=0.9)[0]
     return bar
 
 
@@ -67,11 +69,11 @@ def _name_values(ax: Axes, labels: Labels, years: YearEnergies) -> None:
     for at in np.flatnonzero(np.isfinite(years.energy)).tolist():
         (up,) = labels.dots(np.array([at]), years.energy[at : at + 1])[1]
         high = up - labels.frame[1]
-        needed = labels.width(texts[at]) if upright else HEIGHT
+        inside = high > (labels.width(texts[at]) if upright else HEIGHT) + 6
         ax.annotate(
-            texts[at], (at, 0), xytext=(0, 4 if high > needed + 6 else max(0.0, high) + 3),
+            texts[at], (at, 0), xytext=(0, 4 if inside else max(0.0, high) + 3),
             textcoords="offset points", ha="center", va="bottom", rotation=90 * upright,
-            color="white" if high > needed + 6 else style.INK,
+            color="white" if inside and years.names[at] not in years.filled else style.INK,
         )  # fmt: skip
 
 
@@ -98,6 +100,8 @@ def alt_years(years: YearEnergies) -> str:
             f"{years.names[low]} to {style.quantity(float(years.energy[high]), 'MWh')} in "
             f"{years.names[high]}, mean of {used} years {style.quantity(years.mean, 'MWh')}."
         )
+    if years.filled:
+        text += f" {len(years.filled)} of them hold days filled from a reference."
     if left_out:
         shown = ", ".join(left_out[:6])
         more = f" and {len(left_out) - 6} more" if len(left_out) > 6 else ""

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from functools import cached_property
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, overload
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,6 +25,7 @@ from hydroyield.report.figures.data import (
     thinned,
     typical_years,
 )
+from hydroyield.river.views import RiverViews
 from hydroyield.river.years import MONTH_NAMES, Calendar, months_in_order, span
 
 if TYPE_CHECKING:
@@ -41,6 +42,13 @@ class Facts:
 
     def __init__(self, estimate: Estimate) -> None:
         self.estimate = estimate
+
+    @property
+    def views(self) -> RiverViews:
+        """The record at the site; there is one wherever figures of days are drawn."""
+        views = self.estimate.views
+        assert views is not None
+        return views
 
     # --- along the duration curve ---------------------------------------------------------------
 
@@ -178,6 +186,9 @@ class Facts:
         return YearEnergies(
             tuple(span(year, start) for year in every),
             np.array([used.get(str(year), np.nan) for year in every]),
+            frozenset(
+                span(int(year), start) for year, days in self.estimate.filled_days.items() if days
+            ),
         )
 
     @cached_property
@@ -202,6 +213,7 @@ class Facts:
 
     def _hydrograph(self, kind: str, row: int, energy: float) -> Hydrograph:
         scheme, cells = self.estimate.scheme, self.estimate.cells
+        assert scheme.dates is not None  # without days no hydrographs are drawn
         calendar = Calendar.of(scheme.dates, scheme.year_start_month)
         days = calendar.year == cells.years[row]
         river = np.where(days, scheme.discharge, np.nan)[days]
@@ -217,12 +229,21 @@ class Facts:
             turbined=turbined,
             month_starts=tuple(first.tolist()),
             months=tuple(MONTH_NAMES[m - 1][:3] for m in calendar.month[days][first].tolist()),
+            filled=None if scheme.filled is None else scheme.filled[days],
         )
 
 
-def as_facts(estimate: Estimate | Facts) -> Facts:
-    """Facts of an estimate; facts stay what they are."""
-    return estimate if isinstance(estimate, Facts) else Facts(estimate)
+@overload
+def as_facts(estimate: Estimate | Facts) -> Facts: ...
+
+
+@overload
+def as_facts(estimate: RiverViews) -> RiverViews: ...
+
+
+def as_facts(estimate: Estimate | Facts | RiverViews) -> Facts | RiverViews:
+    """Facts of an estimate; facts, and the views of a record alone, stay what they are."""
+    return Facts(estimate) if isinstance(estimate, Estimate) else estimate
 
 
 def _over_all_the_time(table: dict[str, Floats]) -> dict[str, Floats]:

@@ -105,7 +105,8 @@ def alt_duration(curve: Curve) -> str:
 def draw_hydrographs(axes: Sequence[Axes], years: Sequence[Hydrograph]) -> list[dict[str, Artist]]:
     """Years of little, median and much energy, one to an axes, all to one scale.
 
-    Returns for each the lines `river` and `remaining` and the area `turbined`.
+    Returns for each the lines `river` and `remaining`, the area `turbined`, and `filled` where
+    days were filled from a reference.
     """
     low, high = _common_limits(years)
     drawn = []
@@ -115,7 +116,8 @@ def draw_hydrographs(axes: Sequence[Axes], years: Sequence[Hydrograph]) -> list[
     _name_days(axes, years)
     first = Labels(axes[0])
     names = {"river": "river", "turbined": USED, "remaining": "remaining"}
-    first.key(*((drawn[0][name], text) for name, text in names.items()))
+    filled = [(year["filled"], "filled") for year in drawn if "filled" in year][:1]
+    first.key(*((drawn[0][name], text) for name, text in names.items()), *filled)
     return drawn
 
 
@@ -133,7 +135,14 @@ def _draw_year(ax: Axes, year: Hydrograph, low: float) -> dict[str, Artist]:
     area = ax.fill_between(day, rest, year.river, color=style.PALE_BLUE, linewidth=0)
     (remaining,) = ax.plot(day, rest, color=style.BLUE, linewidth=1.0, linestyle=(0, (3, 1)))
     (river,) = ax.plot(day, year.river, color=style.INK, linewidth=1.1)
-    return {"river": river, "remaining": remaining, "turbined": area}
+    drawn: dict[str, Artist] = {"river": river, "remaining": remaining, "turbined": area}
+    if year.filled is not None and year.filled.any():
+        bottom, top = ax.get_ylim()
+        strip = bottom * (top / bottom) ** 0.05
+        drawn["filled"] = ax.fill_between(
+            day, bottom, strip, where=list(year.filled), color=style.ORANGE, linewidth=0.8
+        )
+    return drawn
 
 
 def _name_days(axes: Sequence[Axes], years: Sequence[Hydrograph]) -> None:
