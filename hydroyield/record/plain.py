@@ -13,13 +13,14 @@ from hydroyield.record.numbers import Numbers, read_numbers
 from hydroyield.record.options import RecordOptions
 from hydroyield.record.rows import USED, Layout, Rows
 from hydroyield.record.shapes import looks_like_clock
+from hydroyield.record.split_dates import with_joined_dates
 from hydroyield.record.table import Table, read_table
 from hydroyield.record.units import factor_of, settle_unit, unit_in_header
 
 
 def read_plain(text: str, options: RecordOptions, source: Source) -> Rows:
     """Read delimited text. Raises RecordError with every fault found in units, values and dates."""
-    table = read_table(text, source)
+    table = with_joined_dates(read_table(text, source), options, source)
     chosen = choose_columns(table, options, source)
     faults: list[Fault] = []
     unit = attempt(faults, lambda: _unit(table, chosen.value, options, source))

@@ -7,7 +7,7 @@ the digits of all texts of a shape are read together.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -42,6 +42,17 @@ def looks_like_date(text: str) -> bool:
     if name == "compact":
         return _COMPACT_DATE.fullmatch(text.strip()) is not None
     return name is not None or _SHORT_YEAR.fullmatch(shape) is not None
+
+
+def looks_like_split_date(fields: Sequence[str]) -> bool:
+    """Whether the fields of a row begin with year, month and day, in any order, and go on."""
+    try:
+        first, second, third = (float(field) for field in fields[:3])
+    except ValueError:
+        return False
+    year, others = (first, (second, third)) if first > 31 else (third, (first, second))
+    in_range = 1700 <= year <= 2200 and all(1 <= part <= 31 for part in others)
+    return len(fields) > 3 and in_range and min(others) <= 12
 
 
 def looks_like_clock(text: str) -> bool:

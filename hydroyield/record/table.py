@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from hydroyield.record.delimiter import NAMES, find_delimiter, split_line, split_lines
 from hydroyield.record.faults import Source, in_lines
 from hydroyield.record.numbers import is_number
-from hydroyield.record.shapes import looks_like_date
+from hydroyield.record.shapes import looks_like_date, looks_like_split_date
 from hydroyield.record.units import known_unit
 
 _CHUNK = 50_000  # lines split at a time, so that the rows need not all lie in memory
@@ -122,6 +122,8 @@ def _header(content: _Content, delimiter: str, source: Source) -> _Header:
     number = int(content.numbers[0])
     if any(map(looks_like_date, first)):
         return _commented_header(content, delimiter, len(first))
+    if looks_like_split_date(first):
+        return _Header((), None, (), 0)
     _refuse_broken_row(first, number, source)
     names = tuple(name.strip() for name in _named(content.lines[0], delimiter))
     below = content.all_lines[number] if number < len(content.all_lines) else ""
