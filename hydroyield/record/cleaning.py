@@ -35,10 +35,12 @@ def clean(rows: Rows, source: Source) -> Cleaned:
     Raises RecordError when one time has different values, or when no value is left.
     """
     rows = _negatives_as_missing(rows)
-    disorder = _first_line_out_of_order(rows)
     # of one time, a row with a value comes first; else the order of the file stays
-    order = np.lexsort((rows.reasons != USED, rows.times)) if _has_repeats(rows) else slice(None)
-    ordered = rows.select(order)
+    if not _has_repeats(rows):
+        _refuse_no_value(rows.reasons, source)
+        return Cleaned(rows, rows.lines.size, _dropped(rows.reasons, rows.lines), None)
+    disorder = _first_line_out_of_order(rows)
+    ordered = rows.select(np.lexsort((rows.reasons != USED, rows.times)))
     surplus = np.zeros(len(ordered.lines), dtype=np.bool_)
     surplus[1:] = np.diff(ordered.times) == 0
     _refuse_conflicts(ordered, surplus, source)
@@ -68,7 +70,7 @@ def _first_line_out_of_order(rows: Rows) -> int | None:
 
 
 def _has_repeats(rows: Rows) -> bool:
-    return bool((np.diff(rows.times) <= 0).any())
+    return bool((rows.times[1:] <= rows.times[:-1]).any())
 
 
 def _refuse_conflicts(rows: Rows, surplus: NDArray[np.bool_], source: Source) -> None:

@@ -43,12 +43,13 @@ def daily_means(rows: Rows, source: Source) -> Daily:
 
     Raises RecordError when the usual step is longer than a day, or no day is covered.
     """
-    dates = np.sort(rows.dates)
-    is_daily = not bool((np.diff(dates) == np.timedelta64(0, "D")).any())
-    stamps = dates.astype(np.int64) * DAY_SECONDS if is_daily else rows.times
-    steps = np.sort(np.diff(stamps)) if len(stamps) > 1 else np.array([DAY_SECONDS])
-    step = float(np.median(steps))
-    _refuse_coarse(float(steps[(len(steps) - 1) // 2]), source)
+    is_daily = _one_a_day(rows.dates)
+    stamps = np.sort(rows.dates).astype(np.int64) * DAY_SECONDS if is_daily else rows.times
+    steps = np.diff(stamps) if len(stamps) > 1 else np.array([DAY_SECONDS])
+    middle = (len(steps) - 1) // 2, len(steps) // 2
+    lower, upper = np.partition(steps, middle)[list(middle)]
+    step = (float(lower) + float(upper)) / 2
+    _refuse_coarse(float(lower), source)
     used = rows.reasons == USED
     if is_daily:
         first, values = _on_calendar(rows.dates[used], rows.values[used])
@@ -59,6 +60,13 @@ def daily_means(rows: Rows, source: Source) -> Daily:
     start, stop = _span(values)
     days = first + np.arange(start, stop)
     return Daily(days.astype("datetime64[D]"), values[start:stop], is_daily, step / 60, partial)
+
+
+def _one_a_day(dates: NDArray[np.datetime64]) -> bool:
+    """Whether no date stands twice; dates (n,) in order of time."""
+    if (dates[1:] == dates[:-1]).any():
+        return False
+    return np.unique(dates).size == dates.size  # 24:00 may stand before 00:00 of the day
 
 
 def _refuse_coarse(step: float, source: Source) -> None:
@@ -104,16 +112,26 @@ def trapezoid_means(
     place = np.searchsorted(times, midnights)
     split = bridged[place - 1] & (times[place] != midnights)
     midnights, place = midnights[split], place[split]
-    points = np.insert(values, place, np.interp(midnights, times, values))
-    length = np.diff(np.insert(times, place, midnights))
-    covered = length * np.insert(bridged, place - 1, True)
-    day = np.insert(times, place, midnights)[:-1] // DAY_SECONDS - first
-    coverage = np.bincount(day, covered, minlength=last - first + 1)
-    volume = np.bincount(day, covered * (points[:-1] + points[1:]) / 2, minlength=len(coverage))
+    if midnights.size:
+        values = np.insert(values, place, np.interp(midnights, times, values))
+        times = np.insert(times, place, midnights)
+        bridged = np.insert(bridged, place - 1, True)
+    covered = np.diff(times) * bridged
+    begins = np.searchsorted(times[:-1], np.arange(first, last + 1) * DAY_SECONDS)
+    coverage = _sums(covered, begins)
+    volume = _sums(covered * (values[:-1] + values[1:]) / 2, begins)
     valid = coverage >= COVERAGE * DAY_SECONDS
     means = np.full(len(coverage), np.nan)
     means[valid] = volume[valid] / coverage[valid]
     return first, means, int(np.count_nonzero(~valid & (coverage > 0)))
+
+
+def _sums(values: NDArray[np.float64], begins: NDArray[np.int64]) -> NDArray[np.float64]:
+    """Sums of runs of values, which begin at rising positions; 0 for a run without values."""
+    sums = np.zeros(begins.size)
+    filled = np.diff(begins, append=values.size) > 0
+    sums[filled] = np.add.reduceat(values, begins[filled])
+    return sums
 
 
 def _span(values: NDArray[np.float64]) -> tuple[int, int]:

@@ -107,10 +107,10 @@ def _order(cleaned: Cleaned) -> Check:
 
 def _sentinel(rows: Rows) -> Check:
     """A number of nines alone far above everything else is likely a mark for no value."""
-    values = rows.values[rows.reasons == USED]
-    top = float(values.max())
-    others = values[values < top]
-    below = float(others.max()) if others.size else top
+    used = rows.reasons == USED
+    top = float(rows.values.max(where=used, initial=-np.inf))
+    others = used & (rows.values < top)
+    below = float(rows.values.max(where=others, initial=-np.inf)) if others.any() else top
     is_mark = bool(_SENTINEL.fullmatch(f"{top:.10g}")) and top > _FAR_ABOVE * below
     lines = rows.lines[rows.values == top]
     bad = (

@@ -55,6 +55,11 @@ def is_number(text: str) -> bool:
     return _is_number(_tidy(text))
 
 
+def number_of_mark(text: str) -> float | None:
+    """The number that a mark for "no value" prints, or None for a word."""
+    return _number(_tidy(text), "point")
+
+
 def read_numbers(
     texts: Sequence[str],
     lines: NDArray[np.int64],

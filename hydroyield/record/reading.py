@@ -17,6 +17,7 @@ from hydroyield.record.cleaning import Cleaned, clean
 from hydroyield.record.daily import Daily, daily_means
 from hydroyield.record.faults import Source, in_lines
 from hydroyield.record.formats import PLAIN, format_of_text
+from hydroyield.record.large import read_large
 from hydroyield.record.options import RecordOptions, check_options
 from hydroyield.record.result import FinerSeries, Receipt, Record
 from hydroyield.record.rows import BLANK, USED, Layout, Rows
@@ -72,8 +73,10 @@ def open_file(path: Path | str, options: RecordOptions, shown_as: str | None = N
     source = Source(shown_as or str(path))
     check_options(options, source)
     document = read_document(Path(path), source)
-    found = format_of_text(document.text, options, source)
-    rows = found.read(document.text, options, source)
+    found = format_of_text(document.head, options, source)
+    rows = read_large(document, options, source) if found is PLAIN else None
+    if rows is None:
+        rows = found.read(document.text, options, source)
     legacy = document.encoding == PLAIN.legacy_encoding
     encoding = found.legacy_encoding if legacy else document.encoding
     return _read_file(rows, source, document.sha256, encoding, found.name)

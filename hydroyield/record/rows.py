@@ -7,6 +7,7 @@ nothing of the format.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -74,11 +75,13 @@ class Rows:
     flags: NDArray[np.str_] | None = None
     doubtful: frozenset[str] = frozenset()
 
-    @property
+    @cached_property
     def times(self) -> NDArray[np.int64]:
         """Written clock times [s] since 1970-01-01 00:00, shape (n,)."""
-        days: NDArray[np.int64] = self.dates.astype(np.int64)
-        return days * 86400 + self.seconds
+        times: NDArray[np.int64] = self.dates.astype(np.int64)
+        times *= 86400
+        times += self.seconds
+        return times
 
     def select(self, which: slice | NDArray[np.int64] | NDArray[np.bool_]) -> Rows:
         """Some of the rows, or all in another order."""

@@ -8,6 +8,7 @@ import gzip
 import hashlib
 import zlib
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 
 from hydroyield.record.faults import Source
@@ -19,24 +20,49 @@ _OTHER_KINDS = {
     b"%PDF": "a PDF document",
 }
 _BYTE_ORDER_MARKS = {
-    codecs.BOM_UTF8: "utf-8-sig",
+    codecs.BOM_UTF8: "utf-8 with byte order mark",
     codecs.BOM_UTF16_LE: "utf-16",
     codecs.BOM_UTF16_BE: "utf-16",
 }
+_CODECS = {
+    "utf-8": "utf-8",
+    "utf-8 with byte order mark": "utf-8-sig",
+    "utf-16": "utf-16",
+    "cp1252": "cp1252",
+}
+HEAD = 200_000  # bytes, enough for the head of any format
 
 
 @dataclass(frozen=True)
 class Document:
-    """The text of a record file.
+    """The content of a record file.
 
-    text : the content, lines ended by "\\n"
+    content : the bytes, unpacked where they were packed
     encoding : "utf-8", "utf-8 with byte order mark", "utf-16" or "cp1252"
     sha256 : of the bytes as they lie on disk
+    is_ascii : whether the content has ASCII alone
     """
 
-    text: str
+    content: bytes
     encoding: str
     sha256: str
+    is_ascii: bool
+
+    @cached_property
+    def text(self) -> str:
+        """The content as text, lines ended by "\\n"."""
+        codec = _CODECS[self.encoding]
+        text = self.content.decode(codec, "strict" if codec == "utf-8" else "replace")
+        return text.replace("\r\n", "\n").replace("\r", "\n")
+
+    @cached_property
+    def head(self) -> str:
+        """The first lines of the text, with whole lines only."""
+        if not self.is_ascii or len(self.content) <= HEAD:
+            return self.text
+        start = self.content[:HEAD].decode("ascii")
+        start = start.replace("\r\n", "\n").replace("\r", "\n")
+        return start[: start.rfind("\n") + 1] or start
 
 
 def read_document(path: Path, source: Source) -> Document:
@@ -46,12 +72,13 @@ def read_document(path: Path, source: Source) -> Document:
     """
     stored = _stored_bytes(path, source)
     content = _unpacked(stored, source)
-    if not content.strip():
+    if not content[:HEAD].strip() and not content.strip():
         raise source.error("the file is empty; give a discharge record with dates and values")
-    text, encoding = _decoded(content, source)
-    text = text.replace("\r\n", "\n").replace("\r", "\n")
-    _refuse_web_page(text, source)
-    return Document(text, encoding, hashlib.sha256(stored).hexdigest())
+    is_ascii = content.isascii()
+    encoding = _encoding(content, is_ascii, source)
+    document = Document(content, encoding, hashlib.sha256(stored).hexdigest(), is_ascii)
+    _refuse_web_page(document.head, source)
+    return document
 
 
 def _stored_bytes(path: Path, source: Source) -> bytes:
@@ -86,16 +113,18 @@ def _unpacked(stored: bytes, source: Source) -> bytes:
         ) from None
 
 
-def _decoded(content: bytes, source: Source) -> tuple[str, str]:
-    for mark, codec in _BYTE_ORDER_MARKS.items():
+def _encoding(content: bytes, is_ascii: bool, source: Source) -> str:
+    for mark, encoding in _BYTE_ORDER_MARKS.items():
         if content.startswith(mark):
-            name = "utf-8 with byte order mark" if mark == codecs.BOM_UTF8 else codec
-            return content.decode(codec, "replace"), name
+            return encoding
     _refuse_other_kinds(content, source)
+    if is_ascii:
+        return "utf-8"
     try:
-        return content.decode("utf-8"), "utf-8"
+        content.decode("utf-8")
     except UnicodeDecodeError:
-        return content.decode("cp1252", "replace"), "cp1252"
+        return "cp1252"
+    return "utf-8"
 
 
 def _refuse_other_kinds(content: bytes, source: Source) -> None:

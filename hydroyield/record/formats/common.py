@@ -11,6 +11,8 @@ from hydroyield.errors import RecordError
 from hydroyield.record.faults import Source, in_lines
 from hydroyield.record.options import RecordOptions
 
+_HEAD = 200_000  # characters, more than the head of any file has
+
 
 def rows_of(
     lines: Sequence[str],
@@ -135,7 +137,7 @@ def listed(names: Iterable[str]) -> str:
 
 def head(text: str, count: int = 100) -> list[str]:
     """The first lines of a text."""
-    return text.split("\n", count)[:count]
+    return text[:_HEAD].split("\n", count)[:count]
 
 
 def fields_of(line: str, delimiter: str) -> list[str]:
