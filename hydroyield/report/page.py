@@ -29,6 +29,19 @@ METHODS = (
         "All valid days at the site; plotting positions m/(N+1) (Weibull), linear between ranks.",
     ),
     (
+        "From gauge to site",
+        "The record is multiplied by one factor. Days filled from a reference follow MOVE.1 on "
+        "logarithms (Hirsch 1982). Doubts about the record are computed again with the days in "
+        "question left out or read otherwise, the plant unchanged.",
+    ),
+    (
+        "The river",
+        "Curves of single years give the bands (Vogel and Fennessey 1994). Seven-day minima are "
+        "taken in years that begin with the wettest month. The range between the extreme tangents "
+        "of the mass curve is the storage that would even the flow out (Rippl 1883). Trend by Mann "
+        "and Kendall with Sen's slope, break by Pettitt, from yearly means.",
+    ),
+    (
         "Energy",
         "Each day of the record is evaluated by itself. A month's energy is its mean power times "
         "its hours; a year counts if every month has enough days with a value; means are over the "
