@@ -56,10 +56,14 @@ def _all_days(energy: Estimate) -> Check:
 
 def power_of_days(energy: Estimate) -> Floats:
     """(n,) net power on every day of the record, nan where there is no value [W]."""
-    scheme = energy.scheme
+    scheme, cells = energy.scheme, energy.cells
     assert scheme.dates is not None  # a duration table has no days
     calendar = Calendar.of(scheme.dates, scheme.year_start_month)
-    return _power(energy, scheme.discharge, calendar.month)
+    known = np.isin(calendar.year, cells.years) & ~np.isnan(scheme.discharge)
+    rest = np.where(known, np.nan, scheme.discharge)
+    power = _power(energy, rest, calendar.month)
+    power[known] = energy.net_power[cells.cell_of_day]
+    return power
 
 
 def _power(energy: Estimate, discharge: Floats, month: NDArray[np.int64]) -> Floats:
@@ -71,6 +75,8 @@ def _power(energy: Estimate, discharge: Floats, month: NDArray[np.int64]) -> Flo
     scheme = energy.scheme
     power = np.full(discharge.size, np.nan)
     valid = ~np.isnan(discharge)
+    if not valid.any():
+        return power
     season = scheme.rules.season_of_month[month[valid] - 1]
     distinct, rank = np.unique(discharge[valid], return_inverse=True)
     thin = max(1, -(-distinct.size * scheme.rules.season_count // MOST_DISCHARGES))

@@ -14,6 +14,7 @@ Floats = NDArray[np.float64]
 WEEK = 7  # d
 COMPLETE = 0.95  # share of the windows of a year that need all their days
 BLOCK = 5  # d, of the base-flow method
+SYMMETRIC = 1e-3  # skew below which the first term of its series will do
 TURNING = 0.9  # factor of the base-flow method
 
 
@@ -88,8 +89,6 @@ def low_flow(minima: ArrayLike, return_period: float = 10.0) -> LowFlow:
 
 def _log_pearson(logs: Floats, probability: float) -> float:
     """Value not exceeded with a probability, from logarithms (n,)."""
-    from scipy.stats import norm, pearson3
-
     n = logs.size
     deviation = float(logs.std(ddof=1)) if n > 1 else 0.0
     if deviation <= 1e-12:
@@ -97,8 +96,19 @@ def _log_pearson(logs: Floats, probability: float) -> float:
     skew = 0.0
     if n > 2:
         skew = float(n / (n - 1) / (n - 2) * (((logs - logs.mean()) / deviation) ** 3).sum())
-    factor = norm.ppf(probability) if abs(skew) < 1e-9 else pearson3.ppf(probability, skew)
-    return float(np.exp(logs.mean() + float(factor) * deviation))
+    return float(np.exp(logs.mean() + _frequency_factor(skew, probability) * deviation))
+
+
+def _frequency_factor(skew: float, probability: float) -> float:
+    """Quantile of the Pearson type III distribution with mean 0 and deviation 1."""
+    from scipy.special import gammaincinv, ndtri
+
+    if abs(skew) < SYMMETRIC:
+        normal = float(ndtri(probability))
+        return normal + (normal**2 - 1) * skew / 6
+    shape = 4 / skew**2  # of the gamma distribution that it is, moved and turned round
+    tail = probability if skew > 0 else 1 - probability
+    return float(np.sign(skew) * (gammaincinv(shape, tail) - shape) / np.sqrt(shape))
 
 
 def base_flow_index(discharge: Floats) -> float:

@@ -8,6 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy import stats
 
+from hydroyield.river import low_flow as low_flow_module
 from hydroyield.river.low_flow import base_flow_index, low_flow, seven_day_minima
 
 DATES = np.arange(np.datetime64("2000-01-01"), np.datetime64("2006-01-01"))
@@ -111,3 +112,10 @@ def test_base_flow_is_a_share_and_does_not_depend_on_the_unit(seed: int, gaps: i
 def test_too_short_for_base_flow() -> None:
     assert np.isnan(base_flow_index(np.ones(12)))
     assert np.isnan(base_flow_index(np.full(100, np.nan)))
+
+
+@pytest.mark.parametrize("skew", [-2.5, -1.0, -0.1, -5e-4, 0.0, 5e-4, 0.3, 1.0, 3.0])
+def test_frequency_factors_against_scipy(skew: float) -> None:
+    for probability in (0.01, 0.1, 0.5):
+        found = low_flow_module._frequency_factor(skew, probability)
+        assert found == pytest.approx(stats.pearson3.ppf(probability, skew), abs=1e-6)
