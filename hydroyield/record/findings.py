@@ -16,6 +16,7 @@ from hydroyield.record.rows import USED, Rows
 
 _SENTINEL = re.compile(r"9{3,}(\.9+)?")
 _FAR_ABOVE = 3.0  # a sentinel stands at least so many times above every other value
+_PARTIAL_LIMIT = 0.01  # share of days covered in part from which they are worth a look
 _GAP_LIMIT = 0.1  # share of missing days from which the gaps are worth a look
 
 
@@ -34,7 +35,7 @@ def of_rows(cleaned: Cleaned, encoding: str, file_format: str) -> tuple[Check, .
 
 def of_days(daily: Daily) -> tuple[Check, ...]:
     """The checks of the daily means."""
-    return (_future(daily), _zeros(daily), _gaps(daily))
+    return (_future(daily), _zeros(daily), _gaps(daily), *_partial(daily))
 
 
 def _of(cleaned: Cleaned, reason: str) -> Dropped:
@@ -138,6 +139,19 @@ def _zeros(daily: Daily) -> Check:
         return Check("record_zero_days", "fail", count, 0, bad)
     bad = f"{count} days have zero discharge; look whether the river was dry or values are missing."
     return warn_unless("record_zero_days", not count, count, 0, "No day has zero discharge.", bad)
+
+
+def _partial(daily: Daily) -> tuple[Check, ...]:
+    """Days of a finer record that are covered in part, the first and the last as a rule."""
+    if daily.daily:
+        return ()
+    count, share = daily.partial_days, daily.partial_days / len(daily.means)
+    words = (
+        f"{count} days are covered to less than 90 % and left out, as the first and last often are"
+    )
+    bad = f"{words}; look whether the gaps within days favour floods or nights."
+    few = count <= 2 or share <= _PARTIAL_LIMIT
+    return (warn_unless("record_partial_days", few, share, _PARTIAL_LIMIT, f"{words}.", bad),)
 
 
 def _gaps(daily: Daily) -> Check:

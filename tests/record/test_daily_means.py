@@ -145,3 +145,17 @@ def test_clock_in_its_own_column(tmp_path: Path) -> None:
 def test_midnight_without_a_clock_counts_as_midnight(tmp_path: Path) -> None:
     rows = hourly("2020-01-01T00:00", [5.0] * 25).replace("T00:00", "")
     assert read_text(tmp_path, rows)[1] == [5.0]
+
+
+def test_days_covered_in_part_are_counted(tmp_path: Path) -> None:
+    """Noon to noon of three days: the first and the last are half there."""
+    path = tmp_path / "flow.csv"
+    path.write_text("time,q (m3/s)\n" + hourly("2020-01-01T12:00", [1.0] * 49))
+    checks = {check.name: check for check in read_record(path).receipt.checks}
+    found = checks["record_partial_days"]
+    assert (found.outcome, "2 days are covered" in found.message) == ("pass", True)
+    rows = "".join(hourly(f"2020-01-{d:02d}T06:00", [1.0] * 16) for d in range(1, 20))
+    rows += hourly("2020-02-01T00:00", [1.0] * 72)
+    path.write_text("time,q (m3/s)\n" + rows)
+    checks = {check.name: check for check in read_record(path).receipt.checks}
+    assert checks["record_partial_days"].outcome == "warn"

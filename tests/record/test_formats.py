@@ -471,3 +471,10 @@ def test_one_file_reads_the_same_alone(tmp_path: Path) -> None:
 
 def test_dates_are_of_the_makers() -> None:
     assert DAYS[-1] == datetime.date(2019, 11, 13)
+
+
+def test_monthly_means_are_no_daily_record(tmp_path: Path) -> None:
+    head = "# Title: invented\n# DATA\nYYYY-MM-DD;hh:mm; Value\n"
+    rows = "".join(f"2003-{month:02d}-00;--:--;  3.100\n" for month in range(1, 13))
+    with pytest.raises(RecordError, match=r"m\.txt:4: .*monthly means; download the daily means"):
+        read_record(write(tmp_path, "m.txt", head + rows), shown_as="m.txt")

@@ -34,6 +34,8 @@ def read(text: str, options: RecordOptions, source: Source) -> Rows:
     table = dict(zip(names, columns, strict=False))
     values = {name: table[name] for name in names[1:] if name in table and _holds_values(name)}
     name = choose_series(values, _best(values), options, source)
+    if columns[0] and all(date.endswith("-00") for date in columns[0]):
+        raise source.error("the file holds monthly means; download the daily means", numbers[0])
     clock = table.get("hh:mm", ["--:--"] * len(numbers))
     dates = [_joined(*parts) for parts in zip(table[names[0]], clock, strict=True)]
     unit, line = _find(lines[:start], "unit of measure")
