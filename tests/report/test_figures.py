@@ -515,7 +515,7 @@ def test_texts_of_the_demo_can_be_read(spec: FigureSpec, facts: Facts) -> None:
     assert_texts_can_be_read(spec, facts)
 
 
-@pytest.mark.parametrize("name", [TWINS[0], *(slow(name) for name in TWINS[1:])])
+@pytest.mark.parametrize("name", [slow(name) for name in TWINS])
 def test_texts_can_be_read_at_other_sites(name: str, tmp_path: Path) -> None:
     path = twin_sites.SITES[name](tmp_path)
     facts = Facts(hydroyield.estimate(hydroyield.read_site(path)))
@@ -525,7 +525,7 @@ def test_texts_can_be_read_at_other_sites(name: str, tmp_path: Path) -> None:
 
 @pytest.mark.parametrize(
     "site",
-    [*DEGENERATE, *(slow(site) for site in LESS_EXTREME)],
+    [DEGENERATE[0], *(slow(site) for site in (*DEGENERATE[1:], *LESS_EXTREME))],
     ids=lambda site: site.__name__,
 )
 def test_extreme_sites_give_figures_that_can_be_read(

@@ -16,6 +16,7 @@ from pathlib import Path
 import pytest
 
 import hydroyield
+from hydroyield.report.figures import FIGURES
 from hydroyield.report.files import write_page, write_tables
 from hydroyield.report.progress import Steps
 
@@ -100,7 +101,7 @@ def test_every_figure_is_drawn_within_the_page(browser: object, page: Path, widt
         "return [...document.images].map(i => [i.complete, i.naturalWidth,"
         " i.getBoundingClientRect().left, i.getBoundingClientRect().right, i.alt])"
     )
-    assert len(images) == 10
+    assert len(images) == len(FIGURES)
     for complete, natural, left, right, alt in images:
         assert complete
         assert natural > 0
