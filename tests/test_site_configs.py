@@ -24,6 +24,7 @@ from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
 from hydroyield.site.record_models import Record, Reference
 from hydroyield.site.river_models import RULES, Abstraction
+from hydroyield.site.waterway_models import Canal, Exit, Pipe, TrashRack, WaterwayLoss
 
 ROOT = Path(__file__).parents[1]
 FOLDER = ROOT / "site_configs"
@@ -32,7 +33,8 @@ KEY = re.compile(r"(?P<indent> *)(?P<off>#?)(?P<entry>- )?(?P<key>[a-z_]+):")
 MODELS: tuple[type[BaseModel], ...] = (
     SiteFile, Site, Discharge, Record, Reference, Transfer, InflowBelowIntake, Abstraction, Head,
     Headwater, Weir, Tailwater, Rating, Channel,
-    TurbineGroup, Electrical, Operation, *RULES.values(),
+    TurbineGroup, Electrical, Operation, WaterwayLoss, Pipe, TrashRack, Canal, Exit,
+    *RULES.values(),
 )  # fmt: skip
 
 files = pytest.mark.parametrize("path", FILES, ids=lambda path: path.stem)

@@ -265,6 +265,6 @@ def test_equality_at_the_minimum_runs() -> None:
 
 
 def test_what_it_does_not_know_it_refuses(tmp_path: Path) -> None:
-    pipe = [{"pipe": {"length": 100, "diameter": 1, "roughness": 0.0001}}]
+    siphon = [{"siphon": {"length": 100}}]
     with pytest.raises(ValueError, match="waterway"):
-        twin.estimate(write(tmp_path, [4.0] * 365, waterway=pipe))
+        twin.estimate(write(tmp_path, [4.0] * 365, waterway=siphon))

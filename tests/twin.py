@@ -34,6 +34,7 @@ from typing import Any
 
 import numpy as np
 import yaml
+from iapws._iapws import _Liquid
 from scipy.interpolate import PchipInterpolator
 
 ACCURACY = 3e-6  # of annual energy, see above
@@ -385,6 +386,7 @@ class Water:
     abstracted: float
     lost: float  # abstracted and not given back above the tailwater
     kept: float  # min(Q, the larger of environmental flow and counted abstractions)
+    month: int = 1  # for the trash in the racks, 1 where all months are alike
 
 
 def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
@@ -423,7 +425,12 @@ def share_water(plant: Plant, month: int, discharge: float) -> Water:
     reserve = environmental_flow(plant, month, discharge)
     release = max(0.0, reserve - counted)
     offered = max(0.0, discharge - release - abstracted)
-    return Water(offered, abstracted, lost, min(discharge, max(reserve, counted)))
+    racks = [
+        part["trash_rack"] for part in plant.site.get("waterway") or [] if "trash_rack" in part
+    ]
+    by_month = any(isinstance(rack.get("blockage"), list) for rack in racks)
+    kept = min(discharge, max(reserve, counted))
+    return Water(offered, abstracted, lost, kept, month if by_month else 1)
 
 
 # ---------------------------------------------------------------- levels and heads
@@ -500,14 +507,57 @@ def headwater_level(
     raise ValueError(f"headwater {sorted(headwater)} is not known")
 
 
-def waterway_loss(plant: Plant, total: Any) -> Any:
+BARS = {"rectangular": 2.42, "rounded_upstream": 1.83, "rounded_both": 1.67, "circular": 1.79,
+        "teardrop": 0.76}  # fmt: skip
+
+
+def waterway_loss(plant: Plant, total: Any, month: int = 1) -> Any:
     """Head lost [m] between headwater and units at the discharge of the whole plant."""
     loss = 0.0
+    total = np.asarray(total, dtype=float)
     for part in plant.site.get("waterway") or []:
-        if set(part) - {"source"} != {"loss_coefficient"}:
+        if "loss_coefficient" in part:
+            loss = loss + part["loss_coefficient"] * total**2
+        elif "pipe" in part:
+            loss = loss + pipe_loss(plant, part["pipe"], total)
+        elif "trash_rack" in part:
+            rack = part["trash_rack"]
+            blocked = rack.get("blockage", 0.0)
+            blocked = blocked[month - 1] if isinstance(blocked, list) else blocked
+            velocity = total / (rack["area"] * (1 - blocked))
+            shape = BARS[rack["bar_shape"]]
+            shape *= (rack["bar_thickness"] / rack["clear_spacing"]) ** (4 / 3)
+            shape *= math.sin(math.radians(rack["inclination"]))
+            loss = loss + shape * velocity**2 / (2 * plant.gravity)
+        elif "exit" in part:
+            loss = loss + (total / part["exit"]["area"]) ** 2 / (2 * plant.gravity)
+        elif "canal" in part:
+            canal = part["canal"]
+            area = (canal["bottom_width"] + canal["side_slope"] * canal["depth"]) * canal["depth"]
+            wetted = canal["bottom_width"] + 2 * canal["depth"] * math.hypot(1, canal["side_slope"])
+            speed = total / area
+            slope = (canal["manning_n"] * speed / (area / wetted) ** (2 / 3)) ** 2
+            loss = loss + canal["length"] * slope
+        else:
             raise ValueError(f"waterway {sorted(part)} is not known")
-        loss = loss + part["loss_coefficient"] * np.asarray(total) ** 2
     return loss
+
+
+def pipe_loss(plant: Plant, pipe: dict[str, float], total: Any) -> Any:
+    """Darcy and Weisbach with Colebrook's friction factor by plain substitution."""
+    temperature = (plant.site.get("site") or {}).get("water_temperature", 10)
+    water = _Liquid(temperature + 273.15, 0.1)  # of the package iapws
+    viscosity = water["mu"] / water["rho"]
+    area = math.pi * pipe["diameter"] ** 2 / 4
+    speed = np.maximum(total, 1e-9) / (area * pipe.get("parallel", 1))
+    reynolds = speed * pipe["diameter"] / viscosity
+    friction = np.full(np.shape(reynolds), 0.02)
+    for _ in range(60):
+        inner = pipe["roughness"] / (3.7 * pipe["diameter"]) + 2.51 / (reynolds * friction**0.5)
+        friction = (-2 * np.log10(inner)) ** -2
+    friction = np.where(reynolds < 2320, 64 / reynolds, friction)
+    along = friction * pipe["length"] / pipe["diameter"] + pipe.get("minor_losses", 0.0)
+    return along * speed**2 / (2 * plant.gravity)
 
 
 def joining_below(plant: Plant, discharge: float) -> float:
@@ -539,7 +589,7 @@ def heads_of_day(plant: Plant, discharge: float, water: Water) -> HeadsOf:
         lower = tailwater_level(head["tailwater"], total) if follows_turbine else river_level
         end = lower if axis is None else axis
         gross = np.maximum(upper - end, 0.0)
-        net = gross - waterway_loss(plant, total)
+        net = gross - waterway_loss(plant, total, water.month)
         admissible = (net > 0) & (net >= lowest * (1 - EQUAL))
         if axis is not None:
             admissible = admissible & (np.asarray(lower) <= axis)

@@ -504,6 +504,38 @@ electrical: {generator_efficiency: 0.94, own_use: 0.8}
     return path
 
 
+def penstock_and_rack(folder: Path) -> Path:
+    """Two pipes, a canal, an outlet and a rack that leaves close in autumn."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Bracken Chute, latitude: 46.5, altitude: 600, water_temperature: 7}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.3}
+head:
+  headwater: {level: 640.0}
+  tailwater: {level: 610.0}
+waterway:
+  - canal: {length: 350, bottom_width: 1.8, side_slope: 1.0, depth: 0.9, manning_n: 0.025}
+  - trash_rack: {bar_thickness: 0.01, clear_spacing: 0.02, bar_shape: rounded_upstream,
+      inclination: 65, area: 3.0,
+      blockage: [0.1, 0.1, 0.1, 0.1, 0.1, 0.1, 0.1, 0.1, 0.4, 0.7, 0.6, 0.2]}
+  - pipe: {length: 420, diameter: 0.7, roughness: 0.0002, minor_losses: 1.4, parallel: 2}
+  - exit: {area: 0.9}
+turbines:
+  - count: 1
+    type: francis
+    rated_discharge: 1.9
+electrical: {generator_efficiency: 0.95}
+""",
+    )
+    write_record(folder / "flow.csv", 31, "1998-10-01", "2002-09-30", 1.6, 0.9)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -553,6 +585,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         three_francis_steep,
         derived_ratings,
         calendar_years_and_transfer,
+        penstock_and_rack,
         water_joining_below,
         outages,
     )

@@ -14,6 +14,8 @@ from numpy.typing import NDArray
 
 from hydroyield.errors import ComputationError
 from hydroyield.hydraulics import Heads
+from hydroyield.hydraulics.heads import FREE
+from hydroyield.hydraulics.losses import Waterway
 from hydroyield.powerhouse import EfficiencyCurve, UnitGroup
 from hydroyield.river import WaterRules
 
@@ -36,7 +38,8 @@ class RatingError(ComputationError):
 class UnitSpecification:
     """Equal units as described; None for what is to be derived.
 
-    The fields are those of `UnitGroup`, in its units.
+    The fields are those of `UnitGroup`, in its units, but `branch` holds the losses on the way of
+    one unit.
     """
 
     count: int
@@ -47,6 +50,11 @@ class UnitSpecification:
     minimum_share: float
     curve: EfficiencyCurve
     axis_level: float | None = None
+    branch: Waterway = FREE
+
+    def branch_coefficient(self, discharge: float) -> float:
+        """k of h = k q^2 on the way of one unit, at its rated discharge [m per (m3/s)^2]."""
+        return float(self.branch.coefficient(np.array(discharge)))
 
 
 @dataclass(frozen=True)
@@ -91,6 +99,7 @@ class Setting:
             np.array([state.river_discharge]),
             self.rules.abstracted[[season]],
             self.rules.unreturned[[season]],
+            np.array([season]),
         )
         return float(levels.net(np.array([turbined]), axis_level)[0])
 
@@ -111,7 +120,7 @@ def rate_units(
 def _rated(number: int, unit: UnitSpecification, total: float, setting: Setting) -> UnitGroup:
     head = unit.rated_head
     if head is None:
-        head = setting.net_head(total, unit.axis_level)
+        head = _head_behind_branch(unit, setting.net_head(total, unit.axis_level), setting)
         if head <= 0:
             raise RatingError(
                 number,
@@ -129,8 +138,25 @@ def _rated(number: int, unit: UnitSpecification, total: float, setting: Setting)
         capacity = discharge * per_discharge
     return UnitGroup(
         unit.count, unit.type, discharge, head, capacity,
-        unit.minimum_share, unit.curve, unit.axis_level,
+        unit.minimum_share, unit.curve, unit.axis_level, unit.branch_coefficient(discharge),
     )  # fmt: skip
+
+
+def _head_behind_branch(unit: UnitSpecification, head: float, setting: Setting) -> float:
+    """Net head of one unit at rated discharge [m], from that before its branch."""
+    if unit.branch.is_free:
+        return head
+    behind = head
+    for _ in range(60):  # converges where the branch takes less than half of the head
+        discharge = unit.rated_discharge
+        if discharge is None:
+            assert unit.unit_capacity is not None
+            discharge = unit.unit_capacity / _output_per_discharge(unit, behind, setting)
+        lost = unit.branch_coefficient(discharge) * discharge**2
+        behind = 0.5 * (behind + head - lost)
+        if behind <= 0:
+            return 0.0
+    return behind
 
 
 def _output_per_discharge(unit: UnitSpecification, head: float, setting: Setting) -> float:
@@ -165,7 +191,8 @@ def _solve_total(
     def needed(total: float) -> float:
         each = known
         for _, unit in open_units:
-            head = setting.net_head(total, unit.axis_level)
+            before = setting.net_head(total, unit.axis_level)
+            head = _head_behind_branch(unit, before, setting) if before > 0 else 0.0
             if head <= 0:
                 return np.inf
             assert unit.unit_capacity is not None

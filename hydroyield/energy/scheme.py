@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
@@ -49,7 +49,7 @@ class Scheme:
     def head_state(self, discharge: Floats, season: Ints) -> HeadState:
         """Levels at states of the river, both (n,)."""
         return self.heads.at(
-            discharge, self.rules.abstracted[season], self.rules.unreturned[season]
+            discharge, self.rules.abstracted[season], self.rules.unreturned[season], season
         )
 
     @cached_property
@@ -66,19 +66,33 @@ class Scheme:
         state = self.head_state(river, season)
         standing = np.zeros(state.size)
         running = np.minimum(self.rules.offered(river, season), self.plant.rated_discharge)
-        lines = HeadLines.of(self.plant.groups)
+        plant = self.plant.before_branches()
+        lines = HeadLines.of(plant.groups)
         seen = [
             np.concatenate([state.net(turbined, end) for turbined in (standing, running)])
             for end in lines.lower_ends
         ]
-        return Dispatcher(self.plant, np.maximum(0.0, np.stack(seen)))
+        return Dispatcher(plant, np.maximum(0.0, np.stack(seen)))
 
     def operate(self, discharge: Floats, season: Ints) -> Operation:
         """How the plant runs at river discharges [m3/s] and seasons, both (n,)."""
         limit = self.plant.shutdown_above
         stopped = np.zeros(discharge.shape, bool) if limit is None else discharge > limit
         offered = self.rules.offered(discharge, season)
-        return operate(self.dispatcher, self.head_state(discharge, season), offered, stopped)
+        state = self.head_state(discharge, season)
+        run = operate(self.dispatcher, state, offered, stopped)
+        lost = self._lost_in_branches(state, run.turbined)
+        return run if lost is None else replace(run, net_head=run.net_head - lost)
+
+    def _lost_in_branches(self, state: HeadState, turbined: Floats) -> Floats | None:
+        """(n,) head lost on the ways of single units, weighted by their discharge [m]."""
+        branches = [group.branch for group in self.plant.groups for _ in range(group.count)]
+        if not any(branches):
+            return None
+        through = self.dispatcher.unit_discharges(state, turbined)
+        lost = (np.array(branches)[:, None] * through**3).sum(axis=0)
+        heads = np.zeros(turbined.size)
+        return np.asarray(np.divide(lost, turbined, out=heads, where=turbined > 0))
 
     def net_power(self, output: Floats) -> Floats:
         """Power delivered after transformer, own use and export limit [W]."""

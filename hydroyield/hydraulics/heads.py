@@ -12,8 +12,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.hydraulics.levels import Level, Weir
+from hydroyield.hydraulics.losses import Waterway
 
 Floats = NDArray[np.float64]
+
+FREE = Waterway()
 
 
 @dataclass(frozen=True)
@@ -25,7 +28,8 @@ class Heads:
     tailwater : level against the discharge that it follows
     follows_turbine : the tailwater follows the turbine discharge (a separate tailrace) and not
         the river
-    loss_coefficient : k of h = k Q^2, Q of the whole plant [m per (m3/s)^2]
+    waterway : losses that the discharge of the whole plant meets
+    rack_of_season : (s,) coefficient of the trash racks [m per (m3/s)^2]; empty without them
     inflow_below_intake : water that joins between intake and tailwater, as a share of the river
         discharge at the intake
     """
@@ -33,7 +37,8 @@ class Heads:
     headwater: Level
     tailwater: Level
     follows_turbine: bool = False
-    loss_coefficient: float = 0.0
+    waterway: Waterway = FREE
+    rack_of_season: tuple[float, ...] = ()
     inflow_below_intake: float = 0.0
 
     def below(self, discharge: Floats, unreturned: Floats) -> Floats:
@@ -44,13 +49,22 @@ class Heads:
         """
         return np.maximum(0.0, discharge * (1 + self.inflow_below_intake) - unreturned)
 
-    def at(self, discharge: Floats, abstracted: Floats, unreturned: Floats) -> HeadState:
+    def at(
+        self,
+        discharge: Floats,
+        abstracted: Floats,
+        unreturned: Floats,
+        season: NDArray[np.int64] | None = None,
+    ) -> HeadState:
         """The levels at given states of the river.
 
         discharge : (n,) river discharge [m3/s]
         abstracted : (n,) all abstractions [m3/s]
         unreturned : (n,) abstractions that do not come back above the tailwater [m3/s]
+        season : (n,) by which trash racks are blocked; None for the first
         """
+        racks = np.asarray(self.rack_of_season)
+        seasons = np.zeros(discharge.size, dtype=np.int64) if season is None else season
         over_weir = isinstance(self.headwater, Weir)
         return HeadState(
             self,
@@ -59,6 +73,7 @@ class Heads:
             fixed_tailwater=None
             if self.follows_turbine
             else self.tailwater(self.below(discharge, unreturned)),
+            rack=racks[seasons] if racks.size else None,
         )
 
 
@@ -73,6 +88,7 @@ class HeadState:
     after_abstraction: Floats | None
     fixed_headwater: Floats | None
     fixed_tailwater: Floats | None
+    rack: Floats | None = None
 
     def __getitem__(self, chosen: NDArray[np.intp] | NDArray[np.bool_]) -> HeadState:
         """The chosen states only."""
@@ -85,6 +101,7 @@ class HeadState:
             part(self.after_abstraction),
             part(self.fixed_headwater),
             part(self.fixed_tailwater),
+            part(self.rack),
         )
 
     @property
@@ -97,7 +114,7 @@ class HeadState:
     def depends_on_turbines(self) -> bool:
         """Whether the net head changes with the turbine discharge."""
         levels_fixed = self.fixed_headwater is not None and self.fixed_tailwater is not None
-        return not (levels_fixed and self.heads.loss_coefficient == 0)
+        return not (levels_fixed and self.heads.waterway.is_free)
 
     def headwater(self, turbined: Floats) -> Floats:
         """Headwater level [m]."""
@@ -119,7 +136,10 @@ class HeadState:
 
     def loss(self, turbined: Floats) -> Floats:
         """Head lost in the waterway [m]."""
-        return self.heads.loss_coefficient * turbined**2
+        coefficient = self.heads.waterway.coefficient(turbined)
+        if self.rack is not None:
+            coefficient = coefficient + self.rack
+        return np.asarray(coefficient * turbined**2)
 
     def net(self, turbined: Floats, axis_level: float | None = None) -> Floats:
         """Net head [m]; negative where the losses exceed the gross head."""

@@ -1,4 +1,4 @@
-"""Density of water and gravity."""
+"""Density and viscosity of water, and gravity."""
 
 from __future__ import annotations
 
@@ -7,6 +7,7 @@ import math
 STANDARD_DENSITY = 1000.0  # kg/m3, where no water temperature is given
 STANDARD_GRAVITY = 9.81  # m/s2, where no latitude is given
 ICE_POINT = 273.15  # K
+USUAL_TEMPERATURE = 10.0  # degC, for viscosity where no water temperature is given
 
 # IAPWS SR6-08(2011), Table 1 and eq. 2: specific volume of liquid water at 0.1 MPa
 _SCALE = 461.51805 * 10.0 / 1e5  # m3/kg: gas constant x reference temperature / pressure
@@ -44,6 +45,30 @@ def density(temperature: float) -> float:
     volume += sum(a * upper**n for a, n in _UPPER_TERMS)
     volume += sum(b * lower**n for b, n in _LOWER_TERMS)
     return 1 / (_SCALE * volume)
+
+
+# IAPWS SR6-08(2011): viscosity of liquid water at 0.1 MPa, against T / 300 K
+_VISCOSITY_TERMS = (  # (coefficient [1e-6 Pa s], exponent)
+    (280.68, -1.9),
+    (511.45, -7.7),
+    (61.131, -19.6),
+    (0.45903, -40.0),
+)
+
+
+def kinematic_viscosity(temperature: float) -> float:
+    """Kinematic viscosity of liquid water at 0.1 MPa.
+
+    temperature : [degC], 0 to 100
+
+    Returns [m2/s]. Source: IAPWS SR6-08(2011), viscosity over density.
+
+    >>> round(kinematic_viscosity(20.0) * 1e6, 4)
+    1.0034
+    """
+    ratio = (temperature + ICE_POINT) / 300
+    dynamic = 1e-6 * sum(a * math.pow(ratio, n) for a, n in _VISCOSITY_TERMS)
+    return dynamic / density(temperature)
 
 
 def gravity(latitude: float, altitude: float = 0.0) -> float:

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
-from typing import Any
+from typing import Any, cast
 
 import numpy as np
 from numpy.typing import NDArray
@@ -41,6 +41,43 @@ class EfficiencyCurve:
         return max(self.efficiencies)
 
 
+def relative_opening(share: Floats, lost: float) -> Floats:
+    """Discharge over that of full opening at one head before the branch.
+
+    share : (n,) discharge over full discharge at the net head of the moment, behind the branch
+    lost : share of the head that the branch takes at full opening
+
+    The less a unit takes, the less of the head its branch takes: with r the result and s the share,
+    s^2 (1 - r^2 lost) = r^2 (1 - lost).
+    """
+    return np.asarray(share / np.sqrt(1 - lost + lost * share**2))
+
+
+@dataclass(frozen=True)
+class BranchCurve:
+    """Efficiency from the head before the branch of one unit to its shaft.
+
+    curve : of the turbine
+    lost : share of the head that the branch takes at full opening
+
+    Full discharge behind a loss k q^2 grows with the root of the head before it, too, so that the
+    share lost at full opening is the same at every head.
+    """
+
+    curve: EfficiencyCurve
+    lost: float
+
+    def __call__(self, relative: Floats) -> Floats:
+        left = 1 - self.lost * relative**2
+        share = relative * np.sqrt((1 - self.lost) / left)
+        return np.asarray(left * self.curve(np.minimum(share, 1.0)))
+
+    @property
+    def best(self) -> float:
+        """Best efficiency of the turbine itself."""
+        return self.curve.best
+
+
 def rising_part(x: Floats, y: Floats) -> tuple[Floats, Floats]:
     """The points at which y is larger than at any x before."""
     before = np.concatenate([[-np.inf], np.maximum.accumulate(y)[:-1]])
@@ -59,6 +96,7 @@ class UnitGroup:
     minimum_share : least discharge as a share of full discharge
     curve : efficiency of the turbine
     axis_level : where the head of an impulse machine ends [m]; None for the tailwater
+    branch : k of h = k q^2 on the way of one unit alone [m per (m3/s)^2]
     """
 
     count: int
@@ -67,8 +105,23 @@ class UnitGroup:
     rated_head: float
     unit_capacity: float
     minimum_share: float
-    curve: EfficiencyCurve
+    curve: EfficiencyCurve | BranchCurve
     axis_level: float | None = None
+    branch: float = 0.0
+
+    def before_branch(self) -> UnitGroup:
+        """The same units as the shared waterway sees them, their branches taken into the curve."""
+        if not self.branch:
+            return self
+        lost = self.branch * self.rated_discharge**2
+        share = lost / (self.rated_head + lost)
+        return replace(
+            self,
+            rated_head=self.rated_head + lost,
+            minimum_share=float(relative_opening(np.array([self.minimum_share]), share)[0]),
+            curve=BranchCurve(cast("EfficiencyCurve", self.curve), share),
+            branch=0.0,
+        )
 
     @property
     def head_exponent(self) -> float:
@@ -161,6 +214,10 @@ class Plant:
     def rated_discharge(self) -> float:
         """Sum of the rated discharges [m3/s]."""
         return sum(group.count * group.rated_discharge for group in self.groups)
+
+    def before_branches(self) -> Plant:
+        """The plant as the shared waterway sees it."""
+        return replace(self, groups=tuple(group.before_branch() for group in self.groups))
 
     @property
     def unit_count(self) -> int:

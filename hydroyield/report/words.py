@@ -10,6 +10,7 @@ from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.years import MONTH_NAMES, span
 from hydroyield.site.discharge_models import Transfer
 from hydroyield.site.models import SiteFile
+from hydroyield.site.waterway_models import WaterwayLoss
 
 KM2 = 1e6  # m2
 
@@ -167,10 +168,29 @@ def tailwater(model: SiteFile) -> str:
 
 def waterway(model: SiteFile) -> str:
     """The losses in one phrase."""
-    if not model.waterway:
-        return "none stated"
-    total = sum(loss.loss_coefficient for loss in model.waterway)
-    return f"h = k Q^2 with k = {total:.3g} m per (m3/s)^2, Q of the whole plant"
+    return "; ".join(map(_loss, model.waterway)) or "none stated"
+
+
+def _loss(loss: WaterwayLoss) -> str:
+    if loss.pipe is not None:
+        pipe = loss.pipe
+        beside = f"{pipe.parallel} pipes" if pipe.parallel > 1 else "pipe"
+        return (
+            f"{beside} of {pipe.length:g} m, {pipe.diameter:g} m wide, roughness "
+            f"{1000 * pipe.roughness:g} mm, minor losses {pipe.minor_losses:g}"
+        )
+    if loss.trash_rack is not None:
+        rack = loss.trash_rack
+        blocked = sorted({percent(share) for share in rack.blockage})
+        return (
+            f"trash rack of {rack.area:g} m2, {1000 * rack.clear_spacing:g} mm clear, "
+            f"{' to '.join(dict.fromkeys((blocked[0], blocked[-1])))} blocked"
+        )
+    if loss.exit is not None:
+        return f"velocity head behind outlets of {loss.exit.area:g} m2"
+    if loss.canal is not None:
+        return f"canal of {loss.canal.length:g} m, held at {loss.canal.depth:g} m"
+    return f"h = k Q^2 with k = {loss.loss_coefficient:.3g} m per (m3/s)^2"
 
 
 def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:

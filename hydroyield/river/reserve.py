@@ -71,12 +71,15 @@ class WaterRules:
         fixed: Sequence[Sequence[float]] = (),
         shares: Sequence[InflowShare] = (),
         abstractions: Sequence[Abstraction] = (),
+        also: Sequence[Sequence[float]] = (),
     ) -> WaterRules:
         """Merge the months in which the same rules hold into seasons.
 
         fixed : for each rule that states a discharge its twelve values, January first [m3/s]
+        also : twelve values each of whatever else differs by month and so divides seasons
         """
-        table = np.zeros((12, 4))
+        table = np.zeros((12, 4 + len(also)))
+        table[:, 4:] = np.asarray(also).reshape(len(also), 12).T
         table[:, 0] = np.max(np.asarray([[0.0] * 12, *fixed]), axis=0)
         for taken in abstractions:
             for month in taken.months:
@@ -84,11 +87,17 @@ class WaterRules:
                 table[month - 1, 2] += taken.discharge * taken.counts_as_environmental_flow
                 table[month - 1, 3] += taken.discharge * (not taken.returns)
         rows, season = np.unique(table, axis=0, return_inverse=True)
-        return cls(season.reshape(12), rows[:, 0], tuple(shares), *rows[:, 1:].T)
+        return cls(season.reshape(12), rows[:, 0], tuple(shares), *rows[:, 1:4].T)
 
     @property
     def season_count(self) -> int:
         return self.fixed.size
+
+    @property
+    def month_of_season(self) -> list[int]:
+        """One calendar month of each season, 1 to 12."""
+        months = self.season_of_month.tolist()
+        return [months.index(season) + 1 for season in range(self.season_count)]
 
     def environmental_flow(self, discharge: Floats, season: Ints) -> Floats:
         """Discharge that must stay in the river, never more than the inflow [m3/s].

@@ -25,10 +25,10 @@ from hydroyield.hydraulics import (
     StageDischarge,
     Weir,
     density,
-    gravity,
 )
 from hydroyield.hydraulics.levels import Level
-from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY
+from hydroyield.hydraulics.losses import racks_of_seasons
+from hydroyield.hydraulics.water import STANDARD_DENSITY
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, Plant, machine_types
 from hydroyield.river import Abstraction, InflowShare, WaterRules, quantile
 from hydroyield.site.head_models import Head, Headwater, Tailwater
@@ -37,6 +37,7 @@ from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
 from hydroyield.site.plant_models import TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
 from hydroyield.site.river_assembly import RiverAtSite, inflow_below_intake
+from hydroyield.site.waterway_assembly import site_gravity, waterway_of
 
 Floats = NDArray[np.float64]
 MONTHS_PER_YEAR = 12
@@ -85,7 +86,8 @@ def assemble(site: SiteDescription, river: RiverAtSite) -> Assembled:
     discharges, a rated value that cannot be derived, a capacity above what the water holds.
     """
     model, valid = site.model, river.valid_discharge
-    rules, heads = water_rules(model, valid), levels(model, valid)
+    rules = water_rules(model, valid)
+    heads = levels(model, rules, valid)
     faults = dry_head_faults(site, heads, np.linspace(0, valid.max(), 400))
     if faults:
         raise SiteFileError(faults)
@@ -106,13 +108,14 @@ def assemble(site: SiteDescription, river: RiverAtSite) -> Assembled:
 def with_other_river(site: SiteDescription, scheme: Scheme, river: RiverAtSite) -> Scheme:
     """The same plant at another series of the river; rules that use its statistics follow it."""
     valid = river.valid_discharge
+    rules = water_rules(site.model, valid)
     return replace(
         scheme,
         dates=river.dates,
         discharge=river.discharge,
         filled=river.filled,
-        rules=water_rules(site.model, valid),
-        heads=levels(site.model, valid),
+        rules=rules,
+        heads=levels(site.model, rules, valid),
     )
 
 
@@ -135,7 +138,8 @@ def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
             fixed.append([statistic] * MONTHS_PER_YEAR)
         else:
             fixed.append([rule.share * float(valid_discharge.mean())] * MONTHS_PER_YEAR)
-    return WaterRules.by_month(fixed, shares, abstractions(model))
+    racks = waterway_of(model.waterway, model.site).racks_by_month
+    return WaterRules.by_month(fixed, shares, abstractions(model), also=[racks])
 
 
 def abstractions(model: SiteFile) -> list[Abstraction]:
@@ -155,18 +159,24 @@ def abstractions(model: SiteFile) -> list[Abstraction]:
 # --- levels and losses --------------------------------------------------------------------------
 
 
-def levels(model: SiteFile, valid_discharge: Floats | None = None) -> Heads:
+def levels(
+    model: SiteFile, rules: WaterRules | None = None, valid_discharge: Floats | None = None
+) -> Heads:
     """Headwater, tailwater and losses.
 
+    rules : whose seasons the blockage of trash racks follows; without them racks are left out
     valid_discharge : of the river at the site [m3/s]; without it nothing joins below the intake
     """
     inflow = 0.0 if valid_discharge is None else inflow_below_intake(model, valid_discharge)
+    way = waterway_of(model.waterway, model.site)
+    racks = () if rules is None else racks_of_seasons(way, rules.month_of_season)
     head: Head = model.head
     return Heads(
         headwater=_headwater(head.headwater),
         tailwater=_tailwater(head.tailwater),
         follows_turbine=head.tailwater.follows == "turbine",
-        loss_coefficient=sum(loss.loss_coefficient for loss in model.waterway),
+        waterway=way,
+        rack_of_season=racks,
         inflow_below_intake=inflow,
     )
 
@@ -204,13 +214,6 @@ def _tailwater(form: Tailwater) -> Level:
 
 
 # --- the plant ----------------------------------------------------------------------------------
-
-
-def site_gravity(site: Site) -> float:
-    """Gravity at the site [m/s2]; 9.81 where no latitude is given."""
-    if site.latitude is None:
-        return STANDARD_GRAVITY
-    return gravity(site.latitude, site.altitude or 0.0)
 
 
 def site_density(site: Site) -> float:
@@ -268,6 +271,7 @@ def _plant(
             minimum_share(group),
             efficiency_curve(group),
             group.axis_level,
+            waterway_of(group.waterway, model.site),
         )
         for group in model.turbines
     ]

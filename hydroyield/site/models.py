@@ -18,8 +18,9 @@ from hydroyield.site.discharge_models import Discharge
 from hydroyield.site.faults import flow, shown
 from hydroyield.site.fields import ListOf, Quantity, Text, scalar_text
 from hydroyield.site.head_models import Head
-from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup, WaterwayLoss
+from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
 from hydroyield.site.river_models import Abstraction, ConstantRule, Rule
+from hydroyield.site.waterway_models import WaterwayLoss
 
 
 class Site(Block):

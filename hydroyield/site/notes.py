@@ -8,10 +8,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY
+from hydroyield.hydraulics.water import STANDARD_DENSITY, STANDARD_GRAVITY, USUAL_TEMPERATURE
 from hydroyield.powerhouse import machine_types
 from hydroyield.river.years import MONTH_NAMES
 from hydroyield.site.faults import KeyPath, key_text
+from hydroyield.site.models import SiteFile
 from hydroyield.site.reading import SiteDescription
 
 
@@ -34,7 +35,7 @@ def filled_in(site: SiteDescription) -> list[Note]:
         *(_filled_in_for_years(site) if model.discharge.record is not None else ()),
         (("head", "tailwater", "follows"), model.head.tailwater.follows),
         (("head", "minimum_net_head"), "any net head above 0"),
-        (("site", "water_temperature"), f"density {STANDARD_DENSITY:g} kg/m3"),
+        (("site", "water_temperature"), _without_temperature(model)),
     ]
     if model.site.latitude is None:
         notes.append((("site", "latitude"), f"gravity {STANDARD_GRAVITY:g} m/s2"))
@@ -46,6 +47,13 @@ def filled_in(site: SiteDescription) -> list[Note]:
         notes.append((("discharge", "transfer", "exponent"), exponent))
     found = [Note(key_text(path), text) for path, text in notes if not site.is_given(path)]
     return found + _filled_in_by_type(site)
+
+
+def _without_temperature(model: SiteFile) -> str:
+    losses = [*model.waterway, *(loss for group in model.turbines for loss in group.waterway)]
+    pipes = any(loss.pipe is not None for loss in losses)
+    viscosity = f", viscosity of {USUAL_TEMPERATURE:g} degC" if pipes else ""
+    return f"density {STANDARD_DENSITY:g} kg/m3{viscosity}"
 
 
 def _filled_in_for_years(site: SiteDescription) -> list[tuple[KeyPath, str]]:
@@ -98,7 +106,11 @@ def left_out(site: SiteDescription) -> list[Note]:
         ),
         (not model.abstractions, "abstractions", "nobody else takes water"),
         (model.discharge.transfer is None, "discharge.transfer", "the record counts as the site's"),
-        (not model.waterway, "waterway", "no head is lost on the way to the turbines"),
+        (
+            not model.waterway and not any(group.waterway for group in model.turbines),
+            "waterway",
+            "no head is lost on the way to the turbines",
+        ),
         (electrical.drive_efficiency is None, "electrical.drive_efficiency", "no loss"),
         (electrical.generator_efficiency is None, "electrical.generator_efficiency", "no loss"),
         (electrical.transformer_efficiency is None, "electrical.transformer_efficiency", "no loss"),

@@ -8,11 +8,12 @@ from typing import Annotated, Any, ClassVar, Literal, get_args
 
 from pydantic import BeforeValidator, Field
 
-from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, POWER, SHARE
+from hydroyield.quantities import DISCHARGE, LENGTH, POWER, SHARE
 from hydroyield.site.blocks import Block
-from hydroyield.site.faults import Finding
-from hydroyield.site.fields import Choice, Quantity, Whole
+from hydroyield.site.faults import Finding, flow
+from hydroyield.site.fields import Choice, ListOf, Quantity, Whole
 from hydroyield.site.tables import Pairs, Table
+from hydroyield.site.waterway_models import WaterwayLoss
 
 TurbineType = Literal[
     "kaplan",
@@ -53,21 +54,6 @@ EfficiencyCurve = Annotated[
         word="typical",
     ),
 ]
-
-
-class WaterwayLoss(Block):
-    """One loss between headwater and turbines; the losses add up."""
-
-    example: ClassVar[dict[str, Any]] = {"loss_coefficient": 0.0021}
-    not_supported: ClassVar[dict[str, str]] = {
-        "pipe": "write its loss as loss_coefficient: k, with h = k Q^2 in m and m3/s",
-        "trash_rack": "write its loss as loss_coefficient: k, with h = k Q^2 in m and m3/s",
-    }
-
-    loss_coefficient: Annotated[float, Quantity(NUMBER, at_least=0, example="0.0021")] = Field(
-        description="k in h = k Q^2, with Q the discharge of the whole plant [m per (m3/s)^2].",
-        examples=[0.0021],
-    )
 
 
 class TurbineGroup(Block):
@@ -136,6 +122,12 @@ class TurbineGroup(Block):
         "out.",
         examples=["98.1 m"],
     )
+    waterway: Annotated[tuple[WaterwayLoss, ...], ListOf(flow(WaterwayLoss.example))] = Field(
+        default=(),
+        description="Losses of the branch that leads to and from one unit, beside those of "
+        "waterway that all units share; none if left out.",
+        examples=[[{"exit": {"area": "3.2 m2"}}]],
+    )
 
     @classmethod
     def keys_fit_together(
@@ -148,6 +140,7 @@ class TurbineGroup(Block):
                 "the size of the unit is missing; write rated_discharge: 6.2 m3/s or "
                 "unit_capacity: 125 kW, or both",
             )
+        yield from _branch_findings(written)
         if written.get("type") != "other":
             return
         if "efficiency" not in named or written.get("efficiency") == "typical":
@@ -161,6 +154,27 @@ class TurbineGroup(Block):
                 ("minimum_discharge",),
                 "type other has no usual minimum discharge; write for example "
                 "minimum_discharge: 20 %",
+            )
+
+
+def _branch_findings(written: Mapping[str, Any]) -> Iterable[Finding]:
+    """What cannot be on the way of one unit."""
+    losses = written.get("waterway")
+    if not isinstance(losses, list | tuple) or not losses:
+        return
+    if written.get("type") == "screw":
+        yield (
+            ("waterway",),
+            "a screw takes its head between the levels; write its losses under the waterway of "
+            "the plant",
+        )
+    for index, loss in enumerate(losses):
+        rack = loss.get("trash_rack") if isinstance(loss, Mapping) else None
+        if rack is not None:
+            yield (
+                ("waterway", index, "trash_rack"),
+                "a trash rack is read under the waterway of the plant; write it there with the "
+                "area of all racks together",
             )
 
 

@@ -15,6 +15,7 @@ from small_schemes import ONE_YEAR, TEN_METRES, WEIGHT, Machinery, scheme, unit
 from hydroyield.energy import estimate_energy
 from hydroyield.energy.ledger import STEPS
 from hydroyield.hydraulics import FixedLevel, Heads, LevelTable, Weir
+from hydroyield.hydraulics.losses import Waterway
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, UnitGroup
 from hydroyield.river import Abstraction, WaterRules
 
@@ -183,7 +184,7 @@ def test_levels_lost_above_the_axis() -> None:
 
 def test_waterway() -> None:
     """0.05 x 4^2 = 0.8 m."""
-    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), loss_coefficient=0.05)
+    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), waterway=Waterway(0.05))
     found = rows(heads=heads)
     same(found, {"waterway": -water(4, 0.8), "turbine": -0.2 * water(4, 9.2)})
 

@@ -15,6 +15,7 @@ from small_schemes import TWO_YEARS, Machinery, scheme
 import hydroyield
 from hydroyield.energy import Estimate, Scheme, estimate_energy
 from hydroyield.hydraulics import FixedLevel, Heads, LevelTable, Weir
+from hydroyield.hydraulics.losses import Waterway
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, UnitGroup, machine_types
 from hydroyield.record import Record
 from hydroyield.river import Abstraction, InflowShare, WaterRules
@@ -92,7 +93,7 @@ def schemes(draw: st.DrawFn, minimum: float | None = None) -> Scheme:
         draw(headwaters),
         draw(tailwaters),
         follows_turbine=draw(st.booleans()),
-        loss_coefficient=draw(st.sampled_from([0.0, 0.001, 0.01])),
+        waterway=Waterway(draw(st.sampled_from([0.0, 0.001, 0.01]))),
     )
     shares = [InflowShare(draw(st.floats(0.0, 0.9)), draw(st.floats(0.0, 3.0)))]
     taken = draw(st.lists(abstractions, max_size=1))
@@ -135,7 +136,7 @@ def test_more_losses_never_give_more_energy(plant: Scheme, more: float) -> None:
     Units without a minimum only: the least discharge of a unit falls with its head, so that more
     losses may let it run on a day on which it would have stood.
     """
-    heads = replace(plant.heads, loss_coefficient=plant.heads.loss_coefficient + more)
+    heads = replace(plant.heads, waterway=Waterway(plant.heads.waterway.fixed + more))
     not_more(replace(plant, heads=heads), plant)
 
 

@@ -13,6 +13,7 @@ import hydroyield
 from hydroyield.energy.rating import RatingError, Setting, UnitSpecification, rate_units
 from hydroyield.errors import SiteFileError
 from hydroyield.hydraulics import FixedLevel, Heads, LevelTable
+from hydroyield.hydraulics.losses import Waterway
 from hydroyield.powerhouse import EfficiencyCurve, UnitGroup
 from hydroyield.river import Abstraction, InflowShare, WaterRules
 
@@ -49,7 +50,7 @@ def only(units: list[UnitSpecification], at: Setting) -> UnitGroup:
 
 def test_head_with_all_units_open_at_the_smallest_river_that_feeds_them() -> None:
     """2 x 5 m3/s and 2 left in the river: 12 m3/s; tailwater 0.12 m, loss 0.001 x 10^2 = 0.1 m."""
-    heads = Heads(FixedLevel(10.0), LevelTable((0.0, 100.0), (0.0, 1.0)), loss_coefficient=0.001)
+    heads = Heads(FixedLevel(10.0), LevelTable((0.0, 100.0), (0.0, 1.0)), waterway=Waterway(0.001))
     rules = WaterRules.by_month([[2.0] * 12])
     groups, state = rate_units([specified(2, discharge=5.0)], setting(heads, rules))
     assert state.river_discharge == pytest.approx(12.0, rel=1e-12)
@@ -87,7 +88,7 @@ def test_head_down_to_the_axis() -> None:
 
 def test_discharges_of_all_groups_count_for_the_losses() -> None:
     """2 + 3 m3/s: loss 0.02 x 5^2 = 0.5 m for either group."""
-    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), loss_coefficient=0.02)
+    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), waterway=Waterway(0.02))
     groups, _ = rate_units([specified(discharge=2.0), specified(discharge=3.0)], setting(heads))
     assert [group.rated_head for group in groups] == pytest.approx([9.5, 9.5])
 
@@ -95,7 +96,7 @@ def test_discharges_of_all_groups_count_for_the_losses() -> None:
 def test_units_that_the_river_never_feeds_are_rated_at_the_most_it_offers() -> None:
     """At most 8 m3/s, of which 2 stay, for units of 10: the head is that of a river of 8 m3/s
     with the units fully open."""
-    heads = Heads(FixedLevel(10.0), LevelTable((0.0, 100.0), (0.0, 1.0)), loss_coefficient=0.001)
+    heads = Heads(FixedLevel(10.0), LevelTable((0.0, 100.0), (0.0, 1.0)), waterway=Waterway(0.001))
     at = setting(heads, WaterRules.by_month([[2.0] * 12]), highest=8.0)
     groups, state = rate_units([specified(2, discharge=5.0)], at)
     assert (state.river_discharge, state.reached) == (8.0, False)
@@ -104,7 +105,7 @@ def test_units_that_the_river_never_feeds_are_rated_at_the_most_it_offers() -> N
 
 def test_no_head_left_is_refused() -> None:
     """0.4 x 5^2 = 10 m of loss."""
-    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), loss_coefficient=0.4)
+    heads = Heads(FixedLevel(10.0), FixedLevel(0.0), waterway=Waterway(0.4))
     with pytest.raises(RatingError, match="no net head is left with all units") as refused:
         rate_units([specified(discharge=5.0)], setting(heads))
     assert refused.value.group == 0
@@ -134,7 +135,7 @@ def at_output(water: float) -> float:
     return TERMINAL * 0.8 * water
 
 
-STEEP = Heads(FixedLevel(10.0), FixedLevel(0.0), loss_coefficient=0.5)
+STEEP = Heads(FixedLevel(10.0), FixedLevel(0.0), waterway=Waterway(0.5))
 
 
 def test_discharge_and_head_solved_together() -> None:

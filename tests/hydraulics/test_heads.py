@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from hydroyield.hydraulics import FixedLevel, Heads, LevelTable, StageDischarge, Weir
+from hydroyield.hydraulics.losses import Waterway
 
 RIVER = np.array([2.0, 10.0, 40.0, 120.0])
 NOTHING = np.zeros(4)
@@ -60,7 +61,7 @@ def test_the_head_of_an_impulse_machine_ends_at_its_axis() -> None:
 
 def test_gross_head_is_never_below_zero() -> None:
     flood = np.array([500.0])
-    state = Heads(FixedLevel(101.2), TAILWATER, loss_coefficient=0.01).at(
+    state = Heads(FixedLevel(101.2), TAILWATER, waterway=Waterway(0.01)).at(
         flood, np.zeros(1), np.zeros(1)
     )
     assert state.tailwater(np.zeros(1))[0] > 101.2
@@ -70,7 +71,7 @@ def test_gross_head_is_never_below_zero() -> None:
 
 
 def test_losses_grow_with_the_square_of_the_turbine_discharge() -> None:
-    state = Heads(FixedLevel(101.2), FixedLevel(97.2), loss_coefficient=0.0021).at(
+    state = Heads(FixedLevel(101.2), FixedLevel(97.2), waterway=Waterway(0.0021)).at(
         RIVER, NOTHING, NOTHING
     )
     turbined = np.array([0.0, 1.0, 10.0, 20.0])
@@ -83,7 +84,7 @@ def test_losses_grow_with_the_square_of_the_turbine_discharge() -> None:
     [
         (Heads(FixedLevel(101.2), TAILWATER), False),
         (Heads(LevelTable((0.0, 9.0), (101.0, 102.0)), TAILWATER), False),
-        (Heads(FixedLevel(101.2), TAILWATER, loss_coefficient=0.001), True),
+        (Heads(FixedLevel(101.2), TAILWATER, waterway=Waterway(0.001)), True),
         (Heads(FixedLevel(101.2), TAILWATER, follows_turbine=True), True),
         (Heads(Weir(100.9, 22.0, 1.8), TAILWATER), True),
         (Heads(Weir(100.9, 22.0, 1.8), TAILWATER, follows_turbine=True), True),

@@ -11,6 +11,7 @@ import pytest
 
 from hydroyield.energy import Estimate, Scheme, estimate_energy
 from hydroyield.hydraulics import FixedLevel, Heads
+from hydroyield.hydraulics.losses import Waterway
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, Plant, UnitGroup
 from hydroyield.river import WaterRules, exceedance_percent
 
@@ -47,7 +48,7 @@ def run(
     capacity = DENSITY * GRAVITY * full * head * efficiency
     curve = EfficiencyCurve((0.0, 1.0), (efficiency, efficiency))
     group = UnitGroup(1, "other", full, head, capacity, minimum_share, curve)
-    heads = Heads(FixedLevel(gross), FixedLevel(0.0), loss_coefficient=(gross - head) / full**2)
+    heads = Heads(FixedLevel(gross), FixedLevel(0.0), waterway=Waterway((gross - head) / full**2))
     plant = Plant((group,), Electrical(), DENSITY, GRAVITY)
     rules = WaterRules.by_month()
     return estimate_energy(Scheme(calendar_years(years), discharge, rules, heads, plant, 1))

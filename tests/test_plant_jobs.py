@@ -1,0 +1,137 @@
+"""Waterway, machines and outages of a site file, each against what follows by hand."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pandas as pd
+import pytest
+
+import hydroyield
+from hydroyield.jobs import SiteEstimate
+
+DAYS = 1461  # four hydrological years from October 2000
+WEIGHT = 1000 * 9.81
+
+
+def river() -> np.ndarray:
+    draw = np.random.default_rng(12)
+    season = 1 + 0.5 * np.cos(2 * np.pi * np.arange(DAYS) / 365.25)
+    return np.round(3 * season * np.exp(0.4 * draw.normal(size=DAYS)), 3)
+
+
+RIVER = river()
+CURVE = "[[0.1, 0.8], [0.5, 0.9], [1, 0.85]]"
+UNIT = (
+    "- {count: 1, type: other, rated_discharge: 3, rated_head: 20, minimum_discharge: 20 %, "
+    f"efficiency: {CURVE}"
+)
+
+
+def estimate(
+    folder: Path, values: np.ndarray = RIVER, head: str = "", **blocks: str
+) -> SiteEstimate:
+    dates = pd.date_range("2000-10-01", periods=len(values), freq="D")
+    pd.DataFrame({"date": dates, "flow_m3s": values}).to_csv(folder / "q.csv", index=False)
+    head = head or "{headwater: {level: 30}, tailwater: {level: 10}}"
+    blocks = {"turbines": f"\n  {UNIT}}}"} | blocks
+    text = "format: 1\nsite: {name: Test}\ndischarge: {record: {file: q.csv}}\n"
+    text += f"head: {head}\n" + "".join(f"{name}: {block}\n" for name, block in blocks.items())
+    (folder / "site.yaml").write_text(text)
+    return hydroyield.estimate(hydroyield.read_site(folder / "site.yaml"))
+
+
+def check(found: SiteEstimate, name: str) -> Any:
+    return next((check for check in found.checks if check.name == name), None)
+
+
+def ledger(found: SiteEstimate) -> dict[str, float]:
+    rows = dict(found.ledger_mwh)
+    assert rows["net"] == pytest.approx(sum(v for k, v in rows.items() if k != "net"), rel=1e-12)
+    assert rows["net"] == pytest.approx(found.mean_annual_energy_mwh, rel=1e-9)
+    return rows
+
+
+# --- waterway ---------------------------------------------------------------------------------------
+
+
+def test_a_branch_of_each_unit_against_a_search_of_every_day(tmp_path: Path) -> None:
+    """One unit behind 2.5 m lost at 3 m3/s: the best discharge of each day by a fine grid."""
+    branch = ", waterway: [{loss_coefficient: 0.2777777777777778}]"
+    found = estimate(tmp_path, turbines=f"\n  {UNIT}{branch}}}")
+    curve = hydroyield.read_site(tmp_path / "site.yaml").model.turbines[0].efficiency
+    from scipy.interpolate import PchipInterpolator
+
+    pchip = PchipInterpolator(*np.array(curve).T)
+    grid = np.linspace(0, 1, 20001)[1:]
+    full = 3 * (20 / (20 + 2.5)) ** 0.5
+    tried = grid * full
+    net = 20 - 2.5 / 9 * tried**2
+    share = tried / (3 * np.sqrt(net / 20))
+    capacity = WEIGHT * 3 * 20 * 0.85
+    power = np.minimum(WEIGHT * tried * net * pchip(np.clip(share, 0.1, 1)), capacity)
+    power = np.where(share >= 0.2 - 1e-12, power, 0.0)
+    best = np.maximum.accumulate(power)
+    place = np.searchsorted(tried, RIVER + 1e-12, side="right") - 1
+    daily = np.where(place >= 0, best[np.maximum(place, 0)], 0.0)
+    assert found.mean_annual_energy_mwh == pytest.approx(daily.sum() * 24 / 4e6, rel=2e-4)
+    rows = ledger(found)
+    turned = np.minimum(RIVER, full) * (RIVER >= 0.2 * 3)
+    lost = WEIGHT * (2.5 / 9 * turned**3).sum() * 24 / 4e6
+    assert rows["waterway"] == pytest.approx(-lost, rel=5e-3)
+
+
+@pytest.mark.parametrize(
+    ("one", "more"),
+    [
+        ("pipe: {length: 200 m, diameter: 1 m, roughness: 0.1 mm}",
+         "pipe: {length: 200 m, diameter: 1 m, roughness: 3 mm}"),
+        ("pipe: {length: 200 m, diameter: 1 m, roughness: 0.1 mm, parallel: 2}",
+         "pipe: {length: 200 m, diameter: 1 m, roughness: 0.1 mm}"),
+        ("exit: {area: 3 m2}", "exit: {area: 1 m2}"),
+        ("trash_rack: {bar_thickness: 10 mm, clear_spacing: 30 mm, bar_shape: circular, "
+         "inclination: 70, area: 2 m2}",
+         "trash_rack: {bar_thickness: 10 mm, clear_spacing: 30 mm, bar_shape: circular, "
+         "inclination: 70, area: 2 m2, blockage: 60 %}"),
+        ("canal: {length: 200 m, bottom_width: 2 m, side_slope: 1, depth: 1 m, manning_n: 0.015}",
+         "canal: {length: 200 m, bottom_width: 2 m, side_slope: 1, depth: 1 m, manning_n: 0.03}"),
+    ],
+)  # fmt: skip
+def test_more_loss_never_gives_more_energy(tmp_path: Path, one: str, more: str) -> None:
+    free = estimate(tmp_path).mean_annual_energy_mwh
+    less = estimate(tmp_path, waterway=f"\n  - {{{one}}}").mean_annual_energy_mwh
+    least = estimate(tmp_path, waterway=f"\n  - {{{more}}}").mean_annual_energy_mwh
+    assert free > less > least
+
+
+def test_trash_of_one_month_costs_that_month_alone(tmp_path: Path) -> None:
+    shape = "bar_thickness: 10 mm, clear_spacing: 30 mm, bar_shape: circular, inclination: 70"
+    rack = f"trash_rack: {{{shape}, area: 1.5 m2, blockage: %s}}"
+    clean = estimate(tmp_path, waterway=f"\n  - {{{rack % '10 %'}}}")
+    shares = "[" + ", ".join(["10 %"] * 9 + ["70 %"] + ["10 %"] * 2) + "]"
+    autumn = estimate(tmp_path, waterway=f"\n  - {{{rack % shares}}}")
+    apart = np.array(clean.monthly_energy_mwh) - np.array(autumn.monthly_energy_mwh)
+    assert apart[9] > 1.0
+    np.testing.assert_allclose(np.delete(apart, 9), 0, atol=1e-9)
+
+
+def test_losses_that_are_missing_or_stated_twice_are_named(tmp_path: Path) -> None:
+    low = "{headwater: {level: 14}, tailwater: {level: 10}}"
+    units = f"\n  {UNIT.replace('rated_head: 20', 'rated_head: 4').replace('other', 'kaplan')}}}"
+    pipe = "pipe: {length: 20 m, diameter: 2 m, roughness: 0.1 mm, minor_losses: 2}"
+    found = estimate(tmp_path, head=low, turbines=units, waterway=f"\n  - {{{pipe}}}")
+    assert check(found, "loss_at_outlet").outcome == "warn"
+    assert check(found, "loss_at_rack").outcome == "warn"
+    assert check(found, "loss_counted_twice").outcome == "pass"
+    twice = f"\n  - {{{pipe}}}\n  - {{exit: {{area: 3 m2}}}}\n  - {{loss_coefficient: 0.01}}"
+    found = estimate(tmp_path, head=low, turbines=units, waterway=twice)
+    assert check(found, "loss_at_outlet") is None  # a bare coefficient may hold it
+    message = check(found, "loss_counted_twice").message
+    assert "loss_coefficient stands beside pipe and exit" in message
+    assert "minor_losses of a pipe may hold its exit" in message
+    fast = "pipe: {length: 20 m, diameter: 0.7 m, roughness: 0.1 mm}"
+    found = estimate(tmp_path, waterway=f"\n  - {{{fast}}}")
+    assert check(found, "pipe_velocity").outcome == "warn"
+    assert check(found, "pipe_velocity").value == pytest.approx(3 / (np.pi * 0.7**2 / 4))
