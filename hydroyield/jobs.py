@@ -13,6 +13,7 @@ from hydroyield.energy.estimate import NoUsableYearError
 from hydroyield.errors import Fault, RecordError
 from hydroyield.evidence import audit
 from hydroyield.evidence.doubts import Rerun, doubts_of, rerun, suspects_of, year_doubts
+from hydroyield.evidence.outages import with_placed_outage
 from hydroyield.record import Receipt, Record, read_record
 from hydroyield.record.joining import read_records
 from hydroyield.record.options import RecordOptions
@@ -74,7 +75,7 @@ def estimate(site: SiteDescription, record: Record | None = None) -> SiteEstimat
     river = river_at_site(site, record, reference)
     assembled = assemble(site, river)
     try:
-        energy = estimate_energy(assembled.scheme)
+        energy = with_placed_outage(site, estimate_energy(assembled.scheme))
     except NoUsableYearError as error:
         assert record is not None  # a duration table has no years that could be short
         raise RecordError([_no_usable_year(site, error, record)]) from None

@@ -10,6 +10,7 @@ import pandas as pd
 import pytest
 
 import hydroyield
+import hydroyield.errors
 from hydroyield.jobs import SiteEstimate
 
 DAYS = 1461  # four hydrological years from October 2000
@@ -54,7 +55,7 @@ def ledger(found: SiteEstimate) -> dict[str, float]:
     return rows
 
 
-# --- waterway ---------------------------------------------------------------------------------------
+# --- waterway -------------------------------------------------------------------------------------
 
 
 def test_a_branch_of_each_unit_against_a_search_of_every_day(tmp_path: Path) -> None:
@@ -135,3 +136,106 @@ def test_losses_that_are_missing_or_stated_twice_are_named(tmp_path: Path) -> No
     found = estimate(tmp_path, waterway=f"\n  - {{{fast}}}")
     assert check(found, "pipe_velocity").outcome == "warn"
     assert check(found, "pipe_velocity").value == pytest.approx(3 / (np.pi * 0.7**2 / 4))
+
+
+# --- outages --------------------------------------------------------------------------------------
+
+TWO = "\n  " + UNIT.replace("count: 1", "count: 2").replace("_discharge: 3", "_discharge: 2") + "}"
+
+
+def test_a_single_unit_loses_what_it_is_out(tmp_path: Path) -> None:
+    always = estimate(tmp_path)
+    out = estimate(tmp_path, operation="{forced_outage_rate: 4 %, common_outage_rate: 1 %}")
+    left = 0.96 * 0.99
+    assert out.mean_annual_energy_mwh == pytest.approx(left * always.mean_annual_energy_mwh)
+    rows = ledger(out)
+    water = {"gross", "reserved", "above_full_discharge", "below_minimum_or_unused"}
+    for step, mwh in ledger(always).items():
+        if step in water:
+            assert rows[step] == pytest.approx(mwh, abs=1e-6)
+    turned = always.operation.turbined
+    lost = WEIGHT * always.reference_head_m * always.cells.per_year(turned) / 1e6
+    assert rows["outage"] == pytest.approx(-(1 - left) * lost)
+    assert out.duration_integral_energy_mwh == pytest.approx(out.mean_annual_energy_mwh)
+
+
+def test_with_two_units_the_other_takes_over_what_it_can(tmp_path: Path) -> None:
+    always = estimate(tmp_path, turbines=TWO)
+    single = estimate(tmp_path, turbines=TWO.replace("count: 2", "count: 1"))
+    out = estimate(tmp_path, turbines=TWO, operation="{forced_outage_rate: 10 %}")
+    both, one = always.mean_annual_energy_mwh, single.mean_annual_energy_mwh
+    expected = 0.81 * both + 0.18 * one
+    assert out.mean_annual_energy_mwh == pytest.approx(expected, rel=1e-6)
+    assert out.mean_annual_energy_mwh > 0.9 * both
+
+
+def test_closed_months_and_standstill(tmp_path: Path) -> None:
+    always = estimate(tmp_path)
+    out = estimate(tmp_path, operation="{closed: jul-aug, standstill: {days: 14, months: feb}}")
+    monthly, before = out.monthly_energy_mwh, always.monthly_energy_mwh
+    assert monthly[6] == monthly[7] == 0.0
+    assert 0.5 * before[1] < monthly[1] < 0.52 * before[1]  # 14 of 28, once of 29 days
+    assert monthly[8] == pytest.approx(before[8])
+    ledger(out)
+
+
+def test_planned_days_are_placed_where_they_cost_least(tmp_path: Path) -> None:
+    placed = estimate(tmp_path, operation="{planned_outage: {days: 12}}")
+    energies = []
+    for month in range(1, 13):
+        named = f"{{planned_outage: {{days: 12, months: {month}}}}}"
+        energies.append(estimate(tmp_path, operation=named).mean_annual_energy_mwh)
+    assert placed.mean_annual_energy_mwh == pytest.approx(max(energies), rel=1e-9)
+    assert check(placed, "planned_outage_months").outcome == "pass"
+    dear = int(np.argmin(energies)) + 1
+    named = estimate(tmp_path, operation=f"{{planned_outage: {{days: 12, months: {dear}}}}}")
+    found = check(named, "planned_outage_months")
+    assert found.outcome == "warn"
+    spared = max(energies) - min(energies)
+    assert found.value == pytest.approx(spared / named.mean_annual_energy_mwh, rel=2e-2)
+
+
+def test_outages_that_do_not_fit_are_a_fault(tmp_path: Path) -> None:
+    fault = r"planned_outage.days: 20 days of each of 2 units do not fit into months of 31 days"
+    with pytest.raises(hydroyield.errors.SiteFileError, match=fault):
+        estimate(tmp_path, turbines=TWO, operation="{planned_outage: {days: 20, months: 8}}")
+
+
+def test_a_plant_that_is_always_available_is_named(tmp_path: Path) -> None:
+    assert check(estimate(tmp_path), "left_out_outages").outcome == "warn"
+    little = estimate(tmp_path, operation="{forced_outage_rate: 0.1 %}")
+    assert check(little, "left_out_outages") is None
+    assert check(little, "unavailability").outcome == "warn"
+    usual = estimate(tmp_path, operation="{forced_outage_rate: 2 %}")
+    assert check(usual, "unavailability").value == pytest.approx(0.02)
+
+
+# --- generators -----------------------------------------------------------------------------------
+
+
+def test_a_level_load_curve_is_one_efficiency(tmp_path: Path) -> None:
+    one = estimate(tmp_path, electrical="{generator_efficiency: 92 %}")
+    level = estimate(tmp_path, electrical="{generator_efficiency: [[0.1, 92 %], [1, 92 %]]}")
+    assert level.mean_annual_energy_mwh == pytest.approx(one.mean_annual_energy_mwh, rel=1e-6)
+    for (step, mwh), (_, other) in zip(level.ledger_mwh, one.ledger_mwh, strict=True):
+        assert mwh == pytest.approx(other, abs=2e-4 * one.mean_annual_energy_mwh), step
+
+
+def test_a_generator_poor_at_part_load_by_hand(tmp_path: Path) -> None:
+    """A steady river of 1.2 m3/s: what the shaft gives times the efficiency at its own load."""
+    steady = np.full(DAYS, 1.2)
+    curve = "[[0.2, 0.8], [0.6, 0.92], [1, 0.94]]"
+    found = estimate(tmp_path, steady, electrical=f"{{generator_efficiency: {curve}}}")
+    from scipy.interpolate import PchipInterpolator
+
+    turbine = float(PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])(0.4))
+    generator = PchipInterpolator([0.2, 0.6, 1], [0.8, 0.92, 0.94])
+    shaft = WEIGHT * 1.2 * 20 * turbine
+    capacity = WEIGHT * 3 * 20 * 0.85 * 0.94
+    output = 0.9 * shaft
+    for _ in range(100):
+        output = shaft * float(generator(output / capacity))
+    assert found.mean_annual_energy_mwh == pytest.approx(output * 24 * DAYS / 4e6, rel=1e-5)
+    rows = ledger(found)
+    lost = (shaft - output) * 24 * DAYS / 4e6
+    assert rows["drive_and_generator"] == pytest.approx(-lost, rel=1e-4)

@@ -100,9 +100,19 @@ class Unit:
     rated_head: float  # m
     minimum: float  # share of full discharge
     capacity: float  # W
-    factor: float  # rho g x drive x generator
+    factor: float  # rho g x drive x generator; without the generator where it has a load curve
     efficiency: Callable[[Any], Any] = field(repr=False, compare=False)
     axis: float | None = None  # m
+    generator: Callable[[Any], Any] | None = field(default=None, repr=False, compare=False)
+
+    def terminals(self, shaft: Any) -> Any:
+        """Output [W] of what reaches the generator, its efficiency read at the output itself."""
+        if self.generator is None:
+            return shaft
+        output = np.asarray(shaft, dtype=float) * 0.95
+        for _ in range(80):
+            output = shaft * self.generator(np.clip(output / self.capacity, 0, 1.5))
+        return output
 
 
 def full_discharge(unit: Unit, head: Any) -> Any:
@@ -131,7 +141,8 @@ def typical_curve(kind: str) -> list[list[float]]:
 def unit_output(unit: Unit, opening: Any, head: Any) -> Any:
     """Output [W] at an opening (q / q_full) and a net head [m]."""
     discharge = opening * full_discharge(unit, head)
-    return np.minimum(unit.factor * discharge * head * unit.efficiency(opening), unit.capacity)
+    shaft = unit.factor * discharge * head * unit.efficiency(opening)
+    return np.minimum(unit.terminals(shaft), unit.capacity)
 
 
 Head = Callable[[Unit, Any], Any]  # (unit, total discharge) -> net head, 0 where not admissible
@@ -657,8 +668,13 @@ def derived_rated_head(plant: Plant, total: float, axis: float | None) -> float:
 def make_units(plant: Plant) -> list[Unit]:
     """The units, with rated head, rated discharge and capacity derived where left out."""
     groups = plant.site["turbines"]
-    through = electrical(plant, "drive_efficiency") * electrical(plant, "generator_efficiency")
-    factor = plant.density * plant.gravity * through
+    drive = electrical(plant, "drive_efficiency")
+    points = (plant.site.get("electrical") or {}).get("generator_efficiency")
+    load_curve = efficiency_curve(points) if isinstance(points, list) else None
+    at_full_load = (
+        float(load_curve(1.0)) if load_curve else electrical(plant, "generator_efficiency")
+    )
+    factor = plant.density * plant.gravity * drive * at_full_load
     curves = []
     for group in groups:
         points = group.get("efficiency", "typical")
@@ -693,9 +709,10 @@ def make_units(plant: Plant) -> list[Unit]:
             rated_h[i],
             minimum,
             capacity,
-            factor,
+            plant.density * plant.gravity * drive if load_curve else factor,
             curves[i],
             group.get("axis_level"),
+            load_curve,
         )
         units += [unit] * group.get("count", 1)
     return units
@@ -730,7 +747,7 @@ def run_units(plant: Plant, units: list[Unit], heads: HeadsOf, offered: float) -
         g, h = (float(x) for x in heads(unit.axis, total))
         opening = min(max(q / float(full_discharge(unit, h)), unit.minimum), 1.0)
         eta = float(unit.efficiency(opening))
-        free_output = unit.factor * q * h * eta
+        free_output = float(unit.terminals(unit.factor * q * h * eta))
         gross.append(g)
         net.append(h)
         etas.append(eta)

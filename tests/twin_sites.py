@@ -536,6 +536,36 @@ electrical: {generator_efficiency: 0.95}
     return path
 
 
+def generator_load_curve(folder: Path) -> Path:
+    """Two crossflow units whose generators are poor at part load, one limited by its capacity."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Sorrel Mill}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+head:
+  headwater: {level: 25.0}
+  tailwater: {table: [[0, 12.0], [20, 13.1]]}
+waterway:
+  - {loss_coefficient: 0.012}
+turbines:
+  - count: 2
+    type: crossflow
+    rated_discharge: 1.5
+    rated_head: 11.0
+    unit_capacity: 125
+electrical:
+  drive_efficiency: 0.97
+  generator_efficiency: [[0.1, 0.72], [0.25, 0.85], [0.5, 0.92], [0.75, 0.94], [1.0, 0.945]]
+  own_use: 1.2
+""",
+    )
+    write_record(folder / "flow.csv", 33, "1998-10-01", "2001-09-30", 2.2, 0.9)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -585,6 +615,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         three_francis_steep,
         derived_ratings,
         calendar_years_and_transfer,
+        generator_load_curve,
         penstock_and_rack,
         water_joining_below,
         outages,

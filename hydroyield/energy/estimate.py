@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING
 
@@ -12,8 +12,8 @@ from numpy.typing import NDArray
 from hydroyield.energy.ledger import ledger, reference_head
 from hydroyield.energy.scheme import Scheme
 from hydroyield.errors import ComputationError
-from hydroyield.powerhouse import Operation
-from hydroyield.quantities import W_PER_KW, WH_PER_MWH
+from hydroyield.powerhouse import Operation, Outages
+from hydroyield.quantities import HOURS_PER_DAY, W_PER_KW, WH_PER_MWH
 from hydroyield.river import (
     Calendar,
     Cells,
@@ -35,23 +35,51 @@ CURVE_STEPS = 400  # rows of a curve, less one
 
 
 @dataclass(frozen=True)
+class PlantState:
+    """The plant with some of its units in service.
+
+    counts : units in service of each group
+    chance : (y, 12) of each month of each year used, January first
+    weight : (c,) hours a year that each cell stands for in this state [h]
+    operation : how the plant runs in each cell; None where no unit is in service
+    net_power : (c,) delivered in each cell [W]
+    """
+
+    counts: tuple[int, ...]
+    chance: Floats
+    weight: Floats
+    operation: Operation | None
+    net_power: Floats
+
+
+@dataclass(frozen=True)
 class Estimate:
     """Annual energy of a scheme and what it rests on.
 
     scheme : what was computed
     cells : states of the river over the years used
-    operation : how the plant runs in each cell
-    net_power : (c,) delivered in each cell [W]
+    states : of the plant, the first with all units in service
     energy_by_month : (y, 12) of each year used, January first [Wh]
     years_left_out : {name of the year: reason}
     """
 
     scheme: Scheme
     cells: Cells
-    operation: Operation
-    net_power: Floats
+    states: tuple[PlantState, ...]
     energy_by_month: Floats
     years_left_out: dict[str, str]
+
+    @property
+    def operation(self) -> Operation:
+        """How the plant runs in each cell with all units in service."""
+        run = self.states[0].operation
+        assert run is not None  # a plant has a unit
+        return run
+
+    @property
+    def net_power(self) -> Floats:
+        """(c,) delivered in each cell with all units in service [W]."""
+        return self.states[0].net_power
 
     # --- headline -------------------------------------------------------------------------------
 
@@ -160,7 +188,8 @@ class Estimate:
     @property
     def ledger_mwh(self) -> list[tuple[str, float]]:
         """(step, mean annual energy [MWh]) from the energy of all the water to the net."""
-        return ledger(self.scheme, self.cells, self.operation)
+        runs = [(state.operation, state.weight) for state in self.states]
+        return ledger(self.scheme, self.cells, runs)
 
     @property
     def reference_head_m(self) -> float:
@@ -175,8 +204,10 @@ class Estimate:
         """
         import pandas as pd
 
-        power, where = np.unique(-self.net_power, return_inverse=True)
-        hours = np.bincount(where, self.cells.weight)
+        every = np.concatenate([state.net_power for state in self.states])
+        weights = np.concatenate([state.weight for state in self.states])
+        power, where = np.unique(-every, return_inverse=True)
+        hours = np.bincount(where, weights)
         ends = 100 * np.concatenate([[0.0], np.cumsum(hours) / hours.sum()])
         exceedance = np.repeat(ends, 2)[1:-1]
         return pd.DataFrame(
@@ -197,7 +228,7 @@ class Estimate:
         Columns `month` (0: mean of the months, weighted by their days; 1 to 12 where rules differ
         by month), `exceedance_percent`, `river_discharge_m3s`, `offered_discharge_m3s`,
         `turbine_discharge_m3s`, `gross_head_m`, `net_head_m`, `power_kw`. Exceedance is that of
-        all valid days, in every month.
+        all valid days, in every month. All units are in service.
         """
         return self._curve_rows.copy()
 
@@ -275,9 +306,59 @@ def estimate_energy(scheme: Scheme) -> Estimate:
 
 
 def _run(scheme: Scheme, cells: Cells, left_out: dict[str, str]) -> Estimate:
-    operation = scheme.operate(cells.discharge, cells.season)
-    power = scheme.net_power(operation.output)
-    return Estimate(scheme, cells, operation, power, cells.by_month(power), left_out)
+    counts = tuple(group.count for group in scheme.plant.groups)
+    days_of_month = cells.hours / HOURS_PER_DAY
+    states = tuple(
+        _state(scheme, cells, state, chance)
+        for state, chance in scheme.outages.states(counts, days_of_month)
+    )
+    energy = sum(state.chance * cells.by_month(state.net_power) for state in states)
+    return Estimate(scheme, cells, states, np.asarray(energy), left_out)
+
+
+def _state(scheme: Scheme, cells: Cells, counts: tuple[int, ...], chance: Floats) -> PlantState:
+    weight = cells.weight_of(chance)
+    if not any(counts):
+        nothing = np.zeros(cells.discharge.size)
+        return PlantState(counts, chance, weight, None, nothing)
+    part = scheme.with_units(counts)
+    run = part.operate(cells.discharge, cells.season)
+    return PlantState(counts, chance, weight, run, part.net_power(run.output))
+
+
+def with_outages(estimate: Estimate, outages: Outages) -> Estimate:
+    """The same estimate with units out of service at other times, or with other chances.
+
+    States that were computed already are not computed again.
+    """
+    scheme, cells = replace(estimate.scheme, outages=outages), estimate.cells
+    known = {state.counts: state for state in estimate.states}
+    states = []
+    counts = estimate.states[0].counts
+    for left, chance in outages.states(counts, cells.hours / HOURS_PER_DAY):
+        state = known.get(left) or _state(scheme, cells, left, chance)
+        states.append(replace(state, chance=chance, weight=cells.weight_of(chance)))
+    energy = sum(state.chance * cells.by_month(state.net_power) for state in states)
+    return replace(
+        estimate, scheme=scheme, states=tuple(states), energy_by_month=np.asarray(energy)
+    )
+
+
+def cost_of_planned_days(estimate: Estimate) -> Floats:
+    """(12,) energy that a day of one unit out of service costs in each month [Wh].
+
+    Mean over the units and over the years used; every other unit is in service.
+    """
+    cells, counts = estimate.cells, estimate.states[0].counts
+    known = {state.counts: state for state in estimate.states}
+    full = cells.by_month(estimate.net_power)
+    lost = np.zeros(full.shape)
+    for group, count in enumerate(counts):
+        left = (*counts[:group], count - 1, *counts[group + 1 :])
+        state = known.get(left) or _state(estimate.scheme, cells, left, np.zeros(full.shape))
+        lost += count * (full - cells.by_month(state.net_power))
+    days = cells.hours / HOURS_PER_DAY
+    return np.asarray((lost / sum(counts) / days).mean(axis=0))
 
 
 class NoUsableYearError(ComputationError):

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -49,29 +49,46 @@ def reference_head(scheme: Scheme) -> float:
     return upper - float(state.tailwater(np.zeros(1))[0])
 
 
-def ledger(scheme: Scheme, cells: Cells, operation: Operation) -> list[tuple[str, float]]:
-    """Rows (step, mean annual energy [MWh]): gross positive, losses negative, net their sum."""
+def ledger(
+    scheme: Scheme, cells: Cells, runs: Sequence[tuple[Operation | None, Floats]]
+) -> list[tuple[str, float]]:
+    """Rows (step, mean annual energy [MWh]): gross positive, losses negative, net their sum.
+
+    runs : operation and weight (c,) [h] of each state of the plant, that with all units first;
+        None where no unit is in service
+    """
     rows: dict[str, float] = {}
-    for step, power in _rates(scheme, cells, operation):
-        rows[step] = rows.get(step, 0.0) + cells.per_year(power) / WH_PER_MWH
+    full = runs[0][0]
+    assert full is not None  # all units are
+    for run, weight in runs:
+        for step, power in _rates(scheme, cells, full, run):
+            rows[step] = rows.get(step, 0.0) + float((weight * power).sum()) / WH_PER_MWH
     rows = {step: rows.get(step, 0.0) for step in STEPS[:-1]}
     return [*rows.items(), ("net", sum(rows.values()))]
 
 
-def _rates(scheme: Scheme, cells: Cells, run: Operation) -> Iterator[tuple[str, Floats]]:
-    """Each step as a rate by cell [W]."""
+def _rates(
+    scheme: Scheme, cells: Cells, full: Operation, run: Operation | None
+) -> Iterator[tuple[str, Floats]]:
+    """Each step as a rate by cell [W].
+
+    full, run : with all units in service, and with those of a state
+    """
     weight = scheme.plant.specific_weight
     of_water = weight * reference_head(scheme)
     yield "gross", of_water * cells.discharge
-    yield "reserved", -of_water * (cells.discharge - run.offered)
-    for step, water in _unused_water(run):
+    yield "reserved", -of_water * (cells.discharge - full.offered)
+    for step, water in _unused_water(full):
         yield step, -of_water * water
+    if run is None:
+        yield "outage", -of_water * full.turbined
+        return
+    yield "outage", -of_water * (full.turbined - run.turbined)
     yield "levels", weight * run.turbined * run.gross_head - of_water * run.turbined
     yield "waterway", -weight * run.turbined * (run.gross_head - run.net_head)
     electrical = scheme.plant.electrical
-    shaft = run.output / electrical.at_terminals
-    yield "turbine", shaft - weight * run.turbined * run.net_head
-    yield "drive_and_generator", run.output - shaft
+    yield "turbine", run.shaft - weight * run.turbined * run.net_head
+    yield "drive_and_generator", run.output - run.shaft
     yield "transformer", -run.output * (1 - electrical.transformer)
     exported = run.output * electrical.transformer
     own_use = np.minimum(exported, electrical.own_use * (run.output > 0))

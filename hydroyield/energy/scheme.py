@@ -9,11 +9,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.hydraulics import Heads, HeadState
-from hydroyield.powerhouse import Dispatcher, HeadLines, Operation, Plant, operate
+from hydroyield.powerhouse import Dispatcher, HeadLines, Operation, Outages, Plant, operate
 from hydroyield.river import WaterRules, quantile
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+
+ALWAYS = Outages()
 
 
 @dataclass(frozen=True)
@@ -29,6 +31,7 @@ class Scheme:
     plant : the machines
     year_start_month : first month of the hydrological year
     minimum_month_coverage : share of the days of a month that need a value
+    outages : when units are out of service
     filled : (n,) days whose discharge was estimated from a reference; None where none was
     """
 
@@ -40,6 +43,16 @@ class Scheme:
     year_start_month: int = 10
     minimum_month_coverage: float = 0.9
     filled: NDArray[np.bool_] | None = None
+    outages: Outages = ALWAYS
+
+    def with_units(self, counts: tuple[int, ...]) -> Scheme:
+        """The same scheme with so many units of each group in service, at least one in all."""
+        groups = tuple(
+            replace(group, count=count)
+            for group, count in zip(self.plant.groups, counts, strict=True)
+            if count
+        )
+        return replace(self, plant=replace(self.plant, groups=groups))
 
     @cached_property
     def valid_discharge(self) -> Floats:

@@ -11,6 +11,7 @@ from hydroyield.energy import Estimate
 from hydroyield.evidence.doubts import Doubt, Rerun, doubt_checks
 from hydroyield.evidence.machines import machine_checks
 from hydroyield.evidence.other_days import day_checks
+from hydroyield.evidence.outages import outage_checks
 from hydroyield.evidence.waterway import waterway_checks
 from hydroyield.hydraulics import Weir
 from hydroyield.hydraulics.levels import range_covered
@@ -45,6 +46,7 @@ def audit(
         *_levels(estimate),
         *_left_out(site),
         *waterway_checks(site.model, estimate),
+        *outage_checks(site, estimate),
         *machine_checks(site, assembled, estimate),
         _energy(estimate),
         _capacity_factor(estimate),

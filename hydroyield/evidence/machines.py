@@ -32,8 +32,8 @@ def machine_checks(
 
 def _generator(label: str, group: UnitGroup, estimate: Estimate) -> Check:
     plant = estimate.scheme.plant
-    gives = plant.terminal_weight * group.rated_discharge * group.rated_head
-    gives *= group.best_relative_output
+    water = group.rated_discharge * group.rated_head * group.best_relative_output
+    gives = plant.specific_weight * plant.electrical.at_terminals * water
     ratio = group.unit_capacity / gives
     return warn_unless(
         "generator_size",

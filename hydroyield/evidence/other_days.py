@@ -37,7 +37,7 @@ def _all_days(energy: Estimate) -> Check:
     """Energy of all days with a value against that of the years used."""
     power = power_of_days(energy)
     every = float(np.nanmean(power)) * 24 * DAYS_PER_YEAR / WH_PER_MWH
-    used = energy.mean_annual_energy_mwh
+    used = energy.cells.per_year(energy.net_power) / WH_PER_MWH
     apart = every / used - 1 if used else 0.0
     words = (
         f"All days with a value, years left out among them, give {every:.4g} MWh a year "

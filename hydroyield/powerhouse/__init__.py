@@ -3,17 +3,27 @@
 from hydroyield.powerhouse.dispatch import HeadLines
 from hydroyield.powerhouse.dispatcher import Dispatcher
 from hydroyield.powerhouse.operation import Operation, operate
+from hydroyield.powerhouse.outages import Outages, Spread
 from hydroyield.powerhouse.types import MachineType, machine_types
-from hydroyield.powerhouse.units import EfficiencyCurve, Electrical, Plant, UnitGroup
+from hydroyield.powerhouse.units import (
+    EfficiencyCurve,
+    Electrical,
+    LoadCurve,
+    Plant,
+    UnitGroup,
+)
 
 __all__ = [
     "Dispatcher",
     "EfficiencyCurve",
     "Electrical",
     "HeadLines",
+    "LoadCurve",
     "MachineType",
     "Operation",
+    "Outages",
     "Plant",
+    "Spread",
     "UnitGroup",
     "machine_types",
     "operate",

@@ -106,9 +106,10 @@ class DispatchTable:
             if own == line
         ]
         limits = [head for head in limits if head < highest]
-        if self._alike and not limits:
+        straight = self._alike and self.plant.electrical.load_curve is None
+        if straight and not limits:
             return np.array([0.0, highest])
-        lowest = min(limits) if self._alike else 0.0
+        lowest = min(limits) if straight else 0.0
         even, shares = HEAD_NODES if len(self.lines.free) == 1 else HEAD_NODES_OF_TWO_LINES
         inner = seen[(seen > lowest) & (seen < highest)]
         spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else inner
@@ -116,9 +117,8 @@ class DispatchTable:
 
     def _limiting_head(self, group: UnitGroup) -> float:
         """Net head above which a unit can exceed its capacity."""
-        rated = self.plant.terminal_weight * group.rated_discharge * group.rated_head
-        rated *= group.best_relative_output
-        ratio = group.unit_capacity / max(rated, 1e-300)
+        rated = group.rated_discharge * group.rated_head * group.best_relative_output
+        ratio = self.plant.water_needed(group) / max(rated, 1e-300)
         return float(group.rated_head * ratio ** (1 / (1 + group.head_exponent)))
 
     def _heads_of_rows(self) -> Floats:
@@ -196,12 +196,13 @@ class DispatchTable:
         # rows at no head borrow the shape of a small head, so that all rows have one scale
         head = np.maximum(head, 1e-6)
         scale = self._reference(np.maximum(self._row_heads, 1e-6))[:, None]
-        open_output = (self.plant.terminal_weight * group.full_discharge(head) * head)[:, None]
+        open_water = (group.full_discharge(head) * head)[:, None]
         if self._alike and steps.min() == steps.max():
             relative = np.broadcast_to(share[:1] * group.curve(share[:1]), share.shape)
         else:
             relative = share * group.curve(share)
-        output = np.minimum(open_output * relative, group.unit_capacity) / scale
+        output = self.plant.terminal_output(group, open_water * relative)
+        output = np.minimum(output, group.unit_capacity) / scale
         output = np.where(runs, output, -np.inf)
         output[:, 0] = np.maximum(0.0, output[:, 0])
         return output
@@ -299,7 +300,8 @@ class DispatchTable:
             alone = np.flatnonzero(near & ~np.isfinite(output) & (first == number))
             head = heads[line, alone]
             share = discharge[alone] / np.maximum(group.full_discharge(head), 1e-300)
-            power = self.plant.terminal_weight * discharge[alone] * head * group.curve(share)
+            water = discharge[alone] * head * group.curve(share)
+            power = self.plant.terminal_output(group, water)
             output[alone] = np.where(share <= 1, np.minimum(power, group.unit_capacity), -np.inf)
         return output
 

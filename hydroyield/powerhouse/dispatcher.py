@@ -107,8 +107,8 @@ class Dispatcher:
         total = np.zeros(turbined.size)
         for number, (group, line) in enumerate(self.groups_on_lines):
             full = group.full_discharge(heads[line])
-            open_power = self.plant.terminal_weight * full * heads[line]
-            share = group.share_giving(group.unit_capacity / np.maximum(open_power, 1e-300))
+            needed = self.plant.water_needed(group) / np.maximum(full * heads[line], 1e-300)
+            share = group.share_giving(needed)
             runs = running[:, number] == 1
             total[runs] += (
                 group.count
@@ -155,9 +155,33 @@ class Dispatcher:
         for (group, line), discharge in zip(self.units_on_lines, discharges, strict=True):
             full = np.maximum(group.full_discharge(heads[line]), 1e-300)
             share = np.clip(discharge / full, group.minimum_share, 1.0)
-            power = self.plant.terminal_weight * discharge * heads[line] * group.curve(share)
+            water = discharge * heads[line] * group.curve(share)
+            power = self.plant.terminal_output(group, water)
             output += np.minimum(power, group.unit_capacity)
         return output
+
+    def shaft_power(self, state: HeadState, turbined: Floats, output: Floats) -> Floats:
+        """(n,) power at the turbine shafts [W] that gives `output` (n,) at the terminals [W].
+
+        Where the generators' efficiency depends on load, that of each unit in the sharing that the
+        table holds best.
+        """
+        electrical = self.plant.electrical
+        if electrical.load_curve is None:
+            return output / electrical.at_terminals
+        heads = self.heads(state, turbined)
+        given, taken = np.zeros(turbined.size), np.zeros(turbined.size)
+        discharges = self.unit_discharges(state, turbined)
+        for (group, line), discharge in zip(self.units_on_lines, discharges, strict=True):
+            full = np.maximum(group.full_discharge(heads[line]), 1e-300)
+            share = np.clip(discharge / full, group.minimum_share, 1.0)
+            water = discharge * heads[line] * group.curve(share)
+            own = np.minimum(self.plant.terminal_output(group, water), group.unit_capacity)
+            given += own
+            taken += electrical.load_curve.shaft(own, group.unit_capacity) / electrical.drive
+        full_load = 1 / electrical.at_terminals
+        ratio = np.divide(taken, given, out=np.full(given.size, full_load), where=given > 0)
+        return np.asarray(output * ratio)
 
     def settle(self, state: HeadState, limit: Floats) -> Floats:
         """(n,) discharge at or below `limit` with the largest output at the head of the moment."""

@@ -46,6 +46,7 @@ class Operation:
     gross_head, net_head : at the turbine discharge [m]; where heads of groups differ, weighted by
         their discharge
     output : at the generator terminals [W]
+    shaft : at the turbine shafts [W]
     stopped : by the river discharge
     no_head : no state is admissible for head
     at_capacity : a unit is at its capacity
@@ -57,6 +58,7 @@ class Operation:
     gross_head: Floats
     net_head: Floats
     output: Floats
+    shaft: Floats
     stopped: Bools
     no_head: Bools
     at_capacity: Bools
@@ -101,6 +103,7 @@ def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: 
         gross_head=gross,
         net_head=net,
         output=output,
+        shaft=dispatcher.shaft_power(state, turbined, output),
         stopped=stopped,
         no_head=_no_head(dispatcher, state),
         at_capacity=at_capacity,
@@ -294,8 +297,10 @@ def _some_at_capacity(
     for (group, line), discharge in zip(dispatcher.units_on_lines, discharges, strict=True):
         full = np.maximum(group.full_discharge(heads[line]), 1e-300)
         share = np.minimum(1.0, discharge / full + 1 / COLUMNS_PER_UNIT)
-        power = dispatcher.plant.terminal_weight * full * heads[line]
-        found |= (discharge > 0) & (power * share * group.curve(share) >= group.unit_capacity)
+        power = dispatcher.plant.terminal_output(
+            group, full * heads[line] * share * group.curve(share)
+        )
+        found |= (discharge > 0) & (power >= group.unit_capacity)
     return found
 
 

@@ -156,10 +156,35 @@ class UnitGroup:
 
 
 @dataclass(frozen=True)
+class LoadCurve:
+    """Generator efficiency against load, the output at the terminals over the unit's capacity.
+
+    curve : efficiency at loads from 0 to 1, read as that of a turbine
+    """
+
+    curve: EfficiencyCurve
+
+    @cached_property
+    def _loads(self) -> tuple[Floats, Floats]:
+        """Power at the shaft over the capacity, rising, and the load that it gives."""
+        load = np.linspace(0, 1.5, 3001)
+        return np.maximum.accumulate(load / self.curve(load)), load
+
+    def output(self, shaft: Floats, capacity: float) -> Floats:
+        """Output at the terminals [W] of the power at the shaft [W]; capacity [W]."""
+        return np.asarray(capacity * np.interp(shaft / capacity, *self._loads))
+
+    def shaft(self, output: Floats, capacity: float) -> Floats:
+        """Power at the shaft [W] for an output at the terminals [W]; capacity [W]."""
+        return np.asarray(output / self.curve(output / capacity))
+
+
+@dataclass(frozen=True)
 class Electrical:
     """From the turbine shaft to the grid.
 
-    drive, generator, transformer : efficiencies, 0 to 1
+    drive, generator, transformer : efficiencies, 0 to 1; that of the generator at full load
+    load_curve : of the generators; None where their efficiency is the same at every load
     own_use : taken while any unit runs [W]
     export_limit : after all losses [W]; None without one
     """
@@ -169,10 +194,11 @@ class Electrical:
     transformer: float = 1.0
     own_use: float = 0.0
     export_limit: float | None = None
+    load_curve: LoadCurve | None = None
 
     @property
     def at_terminals(self) -> float:
-        """Efficiency from the turbine shaft to the generator terminals."""
+        """Efficiency from the turbine shaft to the generator terminals, at full load."""
         return self.drive * self.generator
 
 
@@ -200,10 +226,24 @@ class Plant:
         """Density times gravity [N/m3]."""
         return self.density * self.gravity
 
-    @property
-    def terminal_weight(self) -> float:
-        """Specific weight times drive and generator efficiency [N/m3]."""
-        return self.specific_weight * self.electrical.at_terminals
+    def terminal_output(self, group: UnitGroup, water: Floats) -> Floats:
+        """Output of one unit at the generator terminals [W], its capacity left aside.
+
+        water : discharge x net head x turbine efficiency [m4/s]
+        """
+        shaft = self.specific_weight * self.electrical.drive * water  # behind the drive
+        if self.electrical.load_curve is None:
+            return shaft * self.electrical.generator
+        return self.electrical.load_curve.output(shaft, group.unit_capacity)
+
+    def water_needed(self, group: UnitGroup) -> float:
+        """Discharge x net head x turbine efficiency that gives a unit its capacity [m4/s]."""
+        electrical, capacity = self.electrical, group.unit_capacity
+        if electrical.load_curve is None:
+            shaft = capacity / electrical.generator
+        else:
+            shaft = float(electrical.load_curve.shaft(np.array(capacity), capacity))
+        return shaft / (self.specific_weight * electrical.drive)
 
     @property
     def installed_capacity(self) -> float:

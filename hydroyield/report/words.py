@@ -201,7 +201,7 @@ def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
         ("Generator", given.generator_efficiency),
         ("Transformer", given.transformer_efficiency),
     ):
-        yield name, "not stated; no loss" if share is None else f"{100 * share:.1f} %"
+        yield name, _efficiency(share)
     own_use, limit = given.own_use, given.export_limit
     yield (
         "Own use",
@@ -210,6 +210,14 @@ def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
         else f"{rounded(own_use / W_PER_KW)} kW while running",
     )
     yield "Export limit", "none" if limit is None else f"{rounded(limit / W_PER_KW)} kW"
+
+
+def _efficiency(share: float | tuple[tuple[float, float], ...] | None) -> str:
+    if share is None:
+        return "not stated; no loss"
+    if isinstance(share, tuple):
+        return f"load curve, {100 * share[-1][1]:.1f} % at a load of {percent(share[-1][0])}"
+    return f"{100 * share:.1f} %"
 
 
 def sources(model: SiteFile) -> list[tuple[str, str]]:

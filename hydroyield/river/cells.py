@@ -54,6 +54,15 @@ class Cells:
             np.bincount(self.cell_of_day, hours_of_day, self.discharge.size), dtype=np.float64
         )
 
+    def weight_of(self, chance: Floats) -> Floats:
+        """(c,) hours a year that each cell stands for in a state of the plant.
+
+        chance : (y, 12) of the state, January first
+        """
+        hours_of_day = (self.hours * chance / self.valid_days / self.years.size).ravel()
+        hours = np.bincount(self.cell_of_day, hours_of_day[self.month_of_day], self.discharge.size)
+        return np.asarray(hours, dtype=np.float64)
+
     def mean(self, values: Floats) -> float:
         """Mean over the hours of the years used of a quantity given by cell, (c,)."""
         return self.per_year(values) / self.hours_per_year

@@ -29,10 +29,11 @@ from hydroyield.hydraulics import (
 from hydroyield.hydraulics.levels import Level
 from hydroyield.hydraulics.losses import racks_of_seasons
 from hydroyield.hydraulics.water import STANDARD_DENSITY
-from hydroyield.powerhouse import EfficiencyCurve, Electrical, Plant, machine_types
+from hydroyield.powerhouse import EfficiencyCurve, Electrical, LoadCurve, Plant, machine_types
 from hydroyield.river import Abstraction, InflowShare, WaterRules, quantile
 from hydroyield.site.head_models import Head, Headwater, Tailwater
 from hydroyield.site.models import Site, SiteFile
+from hydroyield.site.outage_assembly import outages_of
 from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
 from hydroyield.site.plant_models import TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
@@ -101,6 +102,7 @@ def assemble(site: SiteDescription, river: RiverAtSite) -> Assembled:
         year_start_month=model.discharge.year_start_month,
         minimum_month_coverage=model.discharge.minimum_month_coverage,
         filled=river.filled,
+        outages=outages_of(site),
     )
     return Assembled(scheme, state, river)
 
@@ -230,12 +232,18 @@ def electrical(model: SiteFile) -> Electrical:
     def or_one(efficiency: float | None) -> float:
         return 1.0 if efficiency is None else efficiency
 
+    generator, curve = given.generator_efficiency, None
+    if isinstance(generator, tuple):
+        loads, efficiencies = zip(*generator, strict=True)
+        curve = LoadCurve(EfficiencyCurve(loads, efficiencies))
+        generator = float(curve.curve(np.array(1.0)))
     return Electrical(
         drive=or_one(given.drive_efficiency),
-        generator=or_one(given.generator_efficiency),
+        generator=or_one(generator),
         transformer=or_one(given.transformer_efficiency),
         own_use=given.own_use or 0.0,
         export_limit=given.export_limit,
+        load_curve=curve,
     )
 
 

@@ -33,7 +33,6 @@ class Block(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", defer_build=True)
 
     example: ClassVar[dict[str, Any]] = {}
-    not_supported: ClassVar[dict[str, str]] = {}  # key -> what to do instead
     exactly_one_of: ClassVar[tuple[str, ...]] = ()  # keys that stand for each other
     at_least_one_of: ClassVar[tuple[str, ...]] = ()  # keys of which any will do
 
@@ -112,21 +111,18 @@ class Block(BaseModel):
     def _findings_of_keys(cls, written: Mapping[str, Any]) -> Iterable[Finding]:
         unknown = [str(key) for key in written if key not in cls.model_fields]
         open_keys = [key for key in cls.model_fields if key not in written]
-        meant = {key: closest(key, open_keys) for key in unknown if key not in cls.not_supported}
+        meant = {key: closest(key, open_keys) for key in unknown}
         for key in unknown:
             yield (key,), cls._not_read(key, meant.get(key))
         named = {*written, *(key for key in meant.values() if key)}
-        stood_for = any(key in cls.not_supported for key in unknown)  # by what is not read yet
         for key, field in cls.model_fields.items():
-            if field.is_required() and key not in named and not stood_for:
+            if field.is_required() and key not in named:
                 yield (key,), f"is missing; write {key}: {flow((field.examples or ['...'])[0])}"
         yield from cls._not_exactly_one(named)
         yield from cls.keys_fit_together(named, written)
 
     @classmethod
     def _not_read(cls, key: str, meant: str | None) -> str:
-        if key in cls.not_supported:
-            return f"'{key}' is not supported yet; {cls.not_supported[key]}"
         if meant:
             return f"unknown key '{shown(key)}'; did you mean '{meant}'?"
         known = [name for name in cls.model_fields if name != "source"]

@@ -117,9 +117,14 @@ def left_out(site: SiteDescription) -> list[Note]:
         (electrical.own_use is None, "electrical.own_use", "the plant itself uses nothing"),
         (electrical.export_limit is None, "electrical.export_limit", "the grid takes everything"),
         (operation.shutdown_above is None, "operation.shutdown_above", "runs in any flood"),
-        (True, "outages", "every unit is available at all times"),
+        (not _has_outages(model), "outages", "every unit is available at all times"),
     ]
     return [Note(key, text) for missing, key, text in absent if missing]
+
+
+def _has_outages(model: SiteFile) -> bool:
+    keys = ("planned_outage", "forced_outage_rate", "common_outage_rate", "standstill", "closed")
+    return any(getattr(model.operation, key) is not None for key in keys)
 
 
 def without_source(site: SiteDescription) -> list[str]:

@@ -6,12 +6,13 @@ from collections.abc import Iterable, Mapping
 from collections.abc import Set as AbstractSet
 from typing import Annotated, Any, ClassVar, Literal, get_args
 
-from pydantic import BeforeValidator, Field
+from pydantic import BeforeValidator, Field, WithJsonSchema
 
-from hydroyield.quantities import DISCHARGE, LENGTH, POWER, SHARE
+from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, POWER, SHARE
 from hydroyield.site.blocks import Block
 from hydroyield.site.faults import Finding, flow
-from hydroyield.site.fields import Choice, ListOf, Quantity, Whole
+from hydroyield.site.fields import NUMBER_OR_TEXT, Choice, ListOf, Quantity, Whole
+from hydroyield.site.months import Months
 from hydroyield.site.tables import Pairs, Table
 from hydroyield.site.waterway_models import WaterwayLoss
 
@@ -26,6 +27,7 @@ TurbineType = Literal[
     "screw",
     "other",
 ]
+MONTHS_PER_YEAR = 12
 MOST_UNITS = 50  # of one group; more is a slip of the pen in a small plant
 
 Efficiency = Annotated[float, Quantity(SHARE, above=0, at_most=1, example="94 %")]
@@ -178,10 +180,18 @@ def _branch_findings(written: Mapping[str, Any]) -> Iterable[Finding]:
             )
 
 
-def _no_load_curve(value: object) -> object:
-    if isinstance(value, list | tuple):
-        raise ValueError("a load curve is not supported yet; write one value, such as 94 %")
-    return value
+def _one_or_curve(value: object) -> object:
+    """One efficiency at every load, or pairs of load and efficiency."""
+    return _LOAD_CURVE.read(value) if isinstance(value, list | tuple) else _ONE.read(value)
+
+
+_ONE = Quantity(SHARE, above=0, at_most=1, example="94 %")
+_LOAD_CURVE = Pairs(
+    Quantity(SHARE, at_least=0, at_most=1),
+    Quantity(SHARE, above=0, at_most=1),
+    ("load", "efficiency"),
+    "[[0.1, 0.80], [0.5, 0.93], [1.0, 0.95]]",
+)
 
 
 class Electrical(Block):
@@ -194,9 +204,17 @@ class Electrical(Block):
         description="Efficiency of gearbox or belt [share or %]; no loss if left out.",
         examples=["98 %"],
     )
-    generator_efficiency: Annotated[Efficiency, BeforeValidator(_no_load_curve)] | None = Field(
+    generator_efficiency: (
+        Annotated[
+            float | Table,
+            BeforeValidator(_one_or_curve),
+            WithJsonSchema({"anyOf": [*NUMBER_OR_TEXT, {"type": "array", "minItems": 2}]}),
+        ]
+        | None
+    ) = Field(
         default=None,
-        description="Efficiency of the generator [share or %]; no loss if left out.",
+        description="Efficiency of the generator, a share or in %: one for every load, or pairs of "
+        "load (output over unit_capacity) and efficiency; no loss if left out.",
         examples=["94 %"],
     )
     transformer_efficiency: Efficiency | None = Field(
@@ -217,19 +235,81 @@ class Electrical(Block):
     )
 
 
+class PlannedOutage(Block):
+    """Maintenance: one unit after another is out, on days spread evenly over the months named."""
+
+    example: ClassVar[dict[str, Any]] = {"days": 10, "months": [8]}
+
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="10")] = Field(
+        description="Days of each unit, every year [d].", examples=[10]
+    )
+    months: Months | None = Field(
+        default=None,
+        description="Calendar months in which they fall, such as 8 or aug-sep; those that cost "
+        "the least energy if left out.",
+        examples=[[8]],
+    )
+
+
+class Standstill(Block):
+    """Days on which the whole plant stands, spread evenly over the months named."""
+
+    example: ClassVar[dict[str, Any]] = {"days": 5, "months": [1, 2]}
+
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="5")] = Field(
+        description="Days every year [d].", examples=[5]
+    )
+    months: Months = Field(
+        description="Calendar months in which they fall, such as 1, jan or jan-feb.",
+        examples=[[1, 2]],
+    )
+
+
 class Operation(Block):
     """How the plant is run."""
 
     example: ClassVar[dict[str, Any]] = {"shutdown_above": "90 m3/s"}
-    not_supported: ClassVar[dict[str, str]] = {
-        "planned_outage": "take the key out; the energy is then that of a plant always available",
-        "forced_outage_rate": "take the key out; the energy is then that of a plant always "
-        "available",
-    }
-
     shutdown_above: Annotated[float, Quantity(DISCHARGE, above=0)] | None = Field(
         default=None,
         description="River discharge above which the plant stands [m3/s]; it runs in any flood if "
         "left out.",
         examples=["90 m3/s"],
     )
+    planned_outage: PlannedOutage | None = Field(
+        default=None,
+        description="Days on which each unit is out of service for maintenance; none if left out.",
+        examples=[PlannedOutage.example],
+    )
+    forced_outage_rate: (
+        Annotated[float, Quantity(SHARE, at_least=0, below=1, example="2 %")] | None
+    ) = Field(
+        default=None,
+        description="Chance that a unit is down in an hour not planned out, each unit by itself "
+        "[share or %]; none if left out.",
+        examples=["2 %"],
+    )
+    common_outage_rate: (
+        Annotated[float, Quantity(SHARE, at_least=0, below=1, example="1 %")] | None
+    ) = Field(
+        default=None,
+        description="Chance that what all units share is down, such as the intake or the line "
+        "[share or %]; none if left out.",
+        examples=["1 %"],
+    )
+    standstill: Standstill | None = Field(
+        default=None,
+        description="Days on which the whole plant stands, such as for ice or flushing; none if "
+        "left out.",
+        examples=[Standstill.example],
+    )
+    closed: Months | None = Field(
+        default=None,
+        description="Calendar months in which the plant does not run, such as 1, jan or jan-feb; "
+        "none if left out.",
+        examples=[[1, 2]],
+    )
+
+    def values_fit_together(self) -> Iterable[Finding]:
+        """A plant that is closed all year is no plant."""
+        if self.closed is not None and len(self.closed) == MONTHS_PER_YEAR:
+            yield ("closed",), "the plant is closed all year; write the months in which it stands"

@@ -139,9 +139,6 @@ def _block(path: str, model: type[Block]) -> Iterator[str]:
             if key not in ("source", "rule")
         ],
     )
-    if model.not_supported:
-        yield "Not supported yet:\n"
-        yield "".join(f"- `{key}`: {remedy}.\n" for key, remedy in model.not_supported.items())
 
 
 def _row(path: str, model: type[Block], key: str, field: FieldInfo) -> tuple[str, ...]:

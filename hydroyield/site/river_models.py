@@ -5,13 +5,14 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Annotated, Any, ClassVar, Literal
 
-from pydantic import AfterValidator, BeforeValidator, Field, WrapValidator
+from pydantic import AfterValidator, Field, WrapValidator
 from pydantic import ValidatorFunctionWrapHandler as Handler
 
 from hydroyield.quantities import DISCHARGE, PERCENT, SHARE
 from hydroyield.site.blocks import Block
 from hydroyield.site.faults import closest, flow, refuse, shown
-from hydroyield.site.fields import ListOf, Quantity, Switch, Text, Whole
+from hydroyield.site.fields import ListOf, Quantity, Switch, Text
+from hydroyield.site.months import Months
 
 MONTHS_PER_YEAR = 12
 ReservedDischarge = Annotated[float, Quantity(DISCHARGE, at_least=0)]
@@ -125,27 +126,6 @@ def _read_rule(written: Any, handler: Handler) -> Any:
 Rule = Annotated[AnyRule, Field(discriminator="rule"), WrapValidator(_read_rule)]
 
 
-def _months(months: Any) -> Any:
-    if not months:
-        raise ValueError("the list is empty; name months, such as [3, 4, 5], or take the key out")
-    return months
-
-
-def _different(months: tuple[int, ...]) -> tuple[int, ...]:
-    twice = sorted({month for month in months if months.count(month) > 1})
-    if twice:
-        raise ValueError(f"month {twice[0]} stands twice; name each month once")
-    return months
-
-
-Months = Annotated[
-    tuple[Annotated[int, Whole(1, 12)], ...],
-    AfterValidator(_different),
-    BeforeValidator(_months),
-    ListOf("3, 4, 5"),
-]
-
-
 class Abstraction(Block):
     """Other water that does not reach the turbines."""
 
@@ -157,7 +137,7 @@ class Abstraction(Block):
     )
     months: Months | None = Field(
         default=None,
-        description="Months in which it is taken, 1 to 12; all year if left out.",
+        description="Months in which it is taken, such as 3, mar or mar-may; all year if left out.",
         examples=[[3, 4, 5]],
     )
     counts_as_environmental_flow: Switch = Field(

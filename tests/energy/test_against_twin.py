@@ -57,7 +57,6 @@ FAST = ("several_flow_rules", "one_kaplan")
 SITES = [
     pytest.param(make, id=name, marks=() if name in FAST else pytest.mark.slow)
     for name, make in twin_sites.SITES.items()
-    if name != "outages"  # refused by name until units can be out of service
 ]
 SITES.append(pytest.param(part_of_the_demo, id="three_years_of_a_demo", marks=pytest.mark.slow))
 # The water above the capacity of a unit is lost in whichever way the dispatch chooses among

@@ -52,14 +52,23 @@ def test_values_are_si() -> None:
     assert model.operation.shutdown_above == 90.0
 
 
-def test_keys_not_supported_yet_are_named_with_their_lines() -> None:
-    numbers = {line.split(":")[0].strip(): n for n, line in enumerate(EXAMPLE.splitlines(), 1)}
-    found = faults_of(EXAMPLE)
-    assert [(line, key) for line, key, _ in found] == [
-        (numbers["planned_outage"], "operation.planned_outage"),
-        (numbers["forced_outage_rate"], "operation.forced_outage_rate"),
-    ]
-    assert all("is not supported yet; " in message for _, _, message in found)
+def test_outages_are_read() -> None:
+    operation = read_site_text(EXAMPLE).model.operation
+    assert operation.planned_outage is not None
+    assert (operation.planned_outage.days, operation.planned_outage.months) == (10.0, (8,))
+    assert operation.forced_outage_rate == 0.02
+
+
+@pytest.mark.parametrize(
+    ("written", "months"),
+    [
+        ("8", (8,)), ("aug", (8,)), ("August", (8,)), ("apr-jun", (4, 5, 6)),
+        ("nov - feb", (11, 12, 1, 2)), ("[3, may]", (3, 5)), ("[oct-dec, 1]", (10, 11, 12, 1)),
+    ],
+)  # fmt: skip
+def test_months_are_numbers_names_or_ranges(written: str, months: tuple[int, ...]) -> None:
+    text = BASE.replace("shutdown_above: 90 m3/s", f"closed: {written}")
+    assert read_site_text(text).model.operation.closed == months
 
 
 def test_left_out_keys_are_filled_in_and_told_apart() -> None:
@@ -338,7 +347,7 @@ def test_every_key_is_documented() -> None:
     schema = SiteFile.model_json_schema()
     assert json.loads(json.dumps(schema)) == schema
     blocks = [schema, *schema["$defs"].values()]
-    assert len(blocks) == 27  # five of them rules
+    assert len(blocks) == 29  # five of them rules
     for block in blocks:
         assert block["additionalProperties"] is False
         assert block["description"].endswith(".")

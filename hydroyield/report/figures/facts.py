@@ -164,9 +164,13 @@ class Facts:
         own = {name: values[self._main_season] for name, values in self._grid.items()}
         weight = self.estimate.scheme.plant.specific_weight
         water = weight * own["turbined"] * own["gross_head"]
-        cells, run = self.estimate.cells, self.estimate.operation
-        turned = cells.per_year(weight * run.turbined * run.gross_head)
-        delivered = cells.per_year(self.estimate.net_power)
+        runs = [(state.operation, state.weight) for state in self.estimate.states]
+        turned = sum(
+            float((hours * weight * run.turbined * run.gross_head).sum())
+            for run, hours in runs
+            if run is not None
+        )
+        delivered = self.estimate.mean_annual_energy_mwh * WH_PER_MWH
         return EfficiencyCurve(
             turbined=own["turbined"],
             efficiency=100 * _ratio(own["power"], water),
