@@ -405,6 +405,8 @@ def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
     largest = 0.0
     for rule in plant.site.get("environmental_flow") or []:
         kind = rule["rule"]
+        if month not in rule.get("months", range(1, 13)):
+            continue
         if kind == "constant":
             value = rule["discharge"]
         elif kind == "monthly":
@@ -416,6 +418,9 @@ def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
         elif kind == "inflow_share":
             above = rule.get("above", 0.0)
             value = min(discharge, above) + rule["share"] * max(0.0, discharge - above)
+            value = max(value, discharge - rule.get("maximum_take", math.inf))
+        elif kind == "steps":
+            value = [kept for inflow, kept in rule["steps"] if inflow <= discharge][-1]
         else:
             raise ValueError(f"rule {kind} is not known")
         largest = max(largest, value)

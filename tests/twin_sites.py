@@ -566,6 +566,34 @@ electrical:
     return path
 
 
+def rules_of_permits(folder: Path) -> Path:
+    """Steps against the inflow, a hands-off flow in summer with a largest take, spring water."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Heron Sill}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: steps, steps: [[0, 0.3], [1.5, 0.6], [4.0, 1.2]]}
+  - {rule: inflow_share, share: 0.6, above: 1.0, maximum_take: 2.2, months: [5, 6, 7, 8, 9]}
+  - {rule: constant, discharge: 1.1, months: [3, 4]}
+head:
+  headwater: {level: 58.0}
+  tailwater: {table: [[0, 52.1], [30, 53.4]]}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 3.0
+    rated_head: 5.6
+electrical: {generator_efficiency: 0.93}
+""",
+    )
+    write_record(folder / "flow.csv", 35, "1998-10-01", "2002-09-30", 3.0, 0.9)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -616,6 +644,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         derived_ratings,
         calendar_years_and_transfer,
         generator_load_curve,
+        rules_of_permits,
         penstock_and_rack,
         water_joining_below,
         outages,

@@ -16,6 +16,7 @@ from hydroyield.evidence.waterway import waterway_checks
 from hydroyield.hydraulics import Weir
 from hydroyield.hydraulics.levels import range_covered
 from hydroyield.record import Record
+from hydroyield.river.presets import PRESETS
 from hydroyield.site.assembly import Assembled
 from hydroyield.site.notes import left_out, without_source
 from hydroyield.site.reading import SiteDescription
@@ -45,6 +46,7 @@ def audit(
         *river_checks(site.model, assembled.river),
         *_levels(estimate),
         *_left_out(site),
+        *_presets(site),
         *waterway_checks(site.model, estimate),
         *outage_checks(site, estimate),
         *machine_checks(site, assembled, estimate),
@@ -105,6 +107,16 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
             "headwater_weir", "pass", None, None,
             "The headwater follows the discharge over a free weir, approach velocity neglected.",
         )  # fmt: skip
+
+
+def _presets(site: SiteDescription) -> Iterator[Check]:
+    for rule in site.model.environmental_flow:
+        if rule.rule == "preset":
+            yield Check(
+                "preset_rule", "warn", None, None,
+                f"The rule {rule.name} is an example ({PRESETS[rule.name].source}), not the law of "
+                "the day and not a permit; ask the authority.",
+            )  # fmt: skip
 
 
 _EFFECT_OF_LEAVING_OUT = {

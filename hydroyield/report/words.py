@@ -7,6 +7,7 @@ from typing import Any
 
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW, rounded
+from hydroyield.river.presets import PRESETS
 from hydroyield.river.years import MONTH_NAMES, span
 from hydroyield.site.discharge_models import Transfer
 from hydroyield.site.models import SiteFile
@@ -67,15 +68,30 @@ def environmental_flow(model: SiteFile) -> list[str]:
 
 
 def _rule(rule: Any) -> str:
+    when = "" if rule.months is None else f", {months(rule.months)}"
+    stated = ", ".join(text for text in (rule.permit, rule.date) if text)
+    return _kept(rule) + when + (f" ({stated})" if stated else "")
+
+
+def _kept(rule: Any) -> str:
     if rule.rule == "constant":
-        return f"{discharge(rule.discharge)} all year"
+        return f"{discharge(rule.discharge)}" + (" all year" if rule.months is None else "")
     if rule.rule == "monthly":
         return "by month, January first: " + ", ".join(rounded(q) for q in rule.discharge) + " m3/s"
     if rule.rule == "exceedance":
         return f"the discharge exceeded {rule.percent:g} % of the time"
     if rule.rule == "mean_share":
         return f"{percent(rule.share)} of the mean discharge"
-    return f"everything up to {discharge(rule.above)}, and {percent(rule.share)} of what exceeds it"
+    if rule.rule == "steps":
+        steps = (f"{discharge(kept)} from {discharge(inflow)} on" for inflow, kept in rule.steps)
+        return "in steps of the inflow: " + ", ".join(steps)
+    if rule.rule == "preset":
+        return f"{PRESETS[rule.name].source}, as an example"
+    most = "" if rule.maximum_take is None else f", at most {discharge(rule.maximum_take)} taken"
+    return (
+        f"everything up to {discharge(rule.above)}, and {percent(rule.share)} of what exceeds it"
+        f"{most}"
+    )
 
 
 def abstractions(model: SiteFile) -> list[str]:

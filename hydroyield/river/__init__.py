@@ -3,7 +3,7 @@
 from hydroyield.river.cells import Cells, condense
 from hydroyield.river.duration import characteristic_discharge, exceedance_percent, quantile
 from hydroyield.river.duration_table import cells_of_table
-from hydroyield.river.reserve import Abstraction, InflowShare, WaterRules
+from hydroyield.river.reserve import Abstraction, InflowShare, InflowSteps, WaterRules
 from hydroyield.river.years import Calendar, usable_years
 
 __all__ = [
@@ -11,6 +11,7 @@ __all__ = [
     "Calendar",
     "Cells",
     "InflowShare",
+    "InflowSteps",
     "WaterRules",
     "cells_of_table",
     "characteristic_discharge",

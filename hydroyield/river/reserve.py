@@ -17,16 +17,50 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 
+ALL_YEAR = tuple(range(1, 13))
+
+
 @dataclass(frozen=True)
 class InflowShare:
     """Everything up to `above` stays in the river, and `share` of what exceeds it.
 
     share : 0 to 1
     above : [m3/s]
+    most_taken : what may be taken at the most, whatever the inflow [m3/s]
+    months : calendar months in which the rule holds
     """
 
     share: float
     above: float
+    most_taken: float = np.inf
+    months: tuple[int, ...] = ALL_YEAR
+
+    def kept(self, discharge: Floats) -> Floats:
+        """(n,) what stays in the river of an inflow (n,) [m3/s]."""
+        low = np.minimum(discharge, self.above)
+        return np.maximum(low + self.share * (discharge - low), discharge - self.most_taken)
+
+
+@dataclass(frozen=True)
+class InflowSteps:
+    """A discharge stays in the river that goes up in steps with the inflow.
+
+    inflows : from which each step holds, rising, the first 0 [m3/s]
+    flows : that stay in the river [m3/s]
+    months : calendar months in which the rule holds
+    """
+
+    inflows: tuple[float, ...]
+    flows: tuple[float, ...]
+    months: tuple[int, ...] = ALL_YEAR
+
+    def kept(self, discharge: Floats) -> Floats:
+        """(n,) what stays in the river of an inflow (n,) [m3/s]."""
+        step = np.searchsorted(self.inflows, discharge, side="right") - 1
+        return np.asarray(np.array(self.flows)[np.maximum(step, 0)])
+
+
+InflowRule = InflowShare | InflowSteps
 
 
 @dataclass(frozen=True)
@@ -52,7 +86,8 @@ class WaterRules:
 
     season_of_month : (12,) season of each calendar month, January first
     fixed : (s,) largest of the rules that state a discharge [m3/s]
-    shares : the rules that state a share of the inflow
+    inflow_rules : the rules that depend on the inflow
+    in_force : (inflow rules, s) whether each holds in a season
     abstracted : (s,) all abstractions [m3/s]
     counted : (s,) those that count as environmental flow [m3/s]
     unreturned : (s,) those that do not come back above the tailwater [m3/s]
@@ -60,7 +95,8 @@ class WaterRules:
 
     season_of_month: Ints
     fixed: Floats
-    shares: tuple[InflowShare, ...]
+    inflow_rules: tuple[InflowRule, ...]
+    in_force: NDArray[np.bool_]
     abstracted: Floats
     counted: Floats
     unreturned: Floats
@@ -69,7 +105,7 @@ class WaterRules:
     def by_month(
         cls,
         fixed: Sequence[Sequence[float]] = (),
-        shares: Sequence[InflowShare] = (),
+        inflow_rules: Sequence[InflowRule] = (),
         abstractions: Sequence[Abstraction] = (),
         also: Sequence[Sequence[float]] = (),
     ) -> WaterRules:
@@ -78,8 +114,11 @@ class WaterRules:
         fixed : for each rule that states a discharge its twelve values, January first [m3/s]
         also : twelve values each of whatever else differs by month and so divides seasons
         """
-        table = np.zeros((12, 4 + len(also)))
-        table[:, 4:] = np.asarray(also).reshape(len(also), 12).T
+        holds = np.array([np.isin(ALL_YEAR, rule.months) for rule in inflow_rules])
+        holds = holds.reshape(len(inflow_rules), 12)
+        table = np.zeros((12, 4 + len(holds) + len(also)))
+        table[:, 4 : 4 + len(holds)] = holds.T
+        table[:, 4 + len(holds) :] = np.asarray(also).reshape(len(also), 12).T
         table[:, 0] = np.max(np.asarray([[0.0] * 12, *fixed]), axis=0)
         for taken in abstractions:
             for month in taken.months:
@@ -87,7 +126,10 @@ class WaterRules:
                 table[month - 1, 2] += taken.discharge * taken.counts_as_environmental_flow
                 table[month - 1, 3] += taken.discharge * (not taken.returns)
         rows, season = np.unique(table, axis=0, return_inverse=True)
-        return cls(season.reshape(12), rows[:, 0], tuple(shares), *rows[:, 1:4].T)
+        in_force = rows[:, 4 : 4 + len(holds)].T > 0
+        flow, abstracted, counted, unreturned = rows[:, :4].T
+        rules = tuple(inflow_rules)
+        return cls(season.reshape(12), flow, rules, in_force, abstracted, counted, unreturned)
 
     @property
     def season_count(self) -> int:
@@ -105,9 +147,9 @@ class WaterRules:
         discharge, season : arrays of one shape; discharge in [m3/s]
         """
         flow = self.fixed[season]
-        for rule in self.shares:
-            kept = np.minimum(discharge, rule.above)
-            flow = np.maximum(flow, kept + rule.share * (discharge - kept))
+        for rule, in_force in zip(self.inflow_rules, self.in_force, strict=True):
+            kept = np.maximum(flow, rule.kept(discharge))
+            flow = kept if in_force.all() else np.where(in_force[season], kept, flow)
         return np.minimum(discharge, flow)
 
     def offered(self, discharge: Floats, season: Ints) -> Floats:
@@ -134,10 +176,12 @@ class WaterRules:
         """
         seasons = np.arange(self.season_count)
         low, high = np.zeros(seasons.size), np.full(seasons.size, highest)
+        if any(isinstance(rule, InflowSteps) for rule in self.inflow_rules):
+            low, high = self._first_bracket(wanted, highest)
         most = self.offered(high, seasons)
         if most.max() < wanted:
             return highest, int(most.argmax())
-        for _ in range(60):  # offered water never falls with the river's discharge
+        for _ in range(60):  # between these, offered water never falls with the river's discharge
             middle = 0.5 * (low + high)
             reached = self.offered(middle, seasons) >= wanted
             low, high = np.where(reached, low, middle), np.where(reached, middle, high)
@@ -145,3 +189,19 @@ class WaterRules:
                 break
         high[most < wanted] = np.inf
         return float(high.min()), int(high.argmin())
+
+    def _first_bracket(self, wanted: float, highest: float) -> tuple[Floats, Floats]:
+        """(s,) discharges just below and at which `wanted` is first offered, where steps fall back.
+
+        Where a season never offers it, both are `highest`.
+        """
+        steps = [rule.inflows for rule in self.inflow_rules if isinstance(rule, InflowSteps)]
+        edges = np.unique([q for inflows in steps for q in inflows if 0 < q <= highest])
+        tried = np.sort(np.concatenate([[0.0, highest], edges, np.nextafter(edges, 0.0)]))
+        low, high = np.full(self.season_count, highest), np.full(self.season_count, highest)
+        for season in range(self.season_count):
+            reached = self.offered(tried, np.full(tried.size, season)) >= wanted
+            if reached.any():
+                first = int(reached.argmax())
+                low[season], high[season] = tried[max(first - 1, 0)], tried[first]
+        return low, high

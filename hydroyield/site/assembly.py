@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -30,7 +31,9 @@ from hydroyield.hydraulics.levels import Level
 from hydroyield.hydraulics.losses import racks_of_seasons
 from hydroyield.hydraulics.water import STANDARD_DENSITY
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, LoadCurve, Plant, machine_types
-from hydroyield.river import Abstraction, InflowShare, WaterRules, quantile
+from hydroyield.river import Abstraction, InflowShare, InflowSteps, WaterRules, quantile
+from hydroyield.river.presets import PRESETS
+from hydroyield.river.reserve import ALL_YEAR, InflowRule
 from hydroyield.site.head_models import Head, Headwater, Tailwater
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.outage_assembly import outages_of
@@ -127,21 +130,35 @@ def with_other_river(site: SiteDescription, scheme: Scheme, river: RiverAtSite) 
 def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
     """The rules of a site in numbers; statistics are those of all valid days at the site."""
     fixed: list[list[float]] = []
-    shares: list[InflowShare] = []
+    by_inflow: list[InflowRule] = []
     for rule in model.environmental_flow:
+        months = rule.months or ALL_YEAR
         if rule.rule == "inflow_share":
-            shares.append(InflowShare(rule.share, rule.above))
-        elif rule.rule == "monthly":
-            fixed.append(list(rule.discharge))
-        elif rule.rule == "constant":
-            fixed.append([rule.discharge] * MONTHS_PER_YEAR)
-        elif rule.rule == "exceedance":
-            statistic = float(quantile(valid_discharge, rule.percent))
-            fixed.append([statistic] * MONTHS_PER_YEAR)
+            most = np.inf if rule.maximum_take is None else rule.maximum_take
+            by_inflow.append(InflowShare(rule.share, rule.above, most, months))
+        elif rule.rule == "steps":
+            inflows, flows = zip(*rule.steps, strict=True)
+            by_inflow.append(InflowSteps(inflows, flows, months))
         else:
-            fixed.append([rule.share * float(valid_discharge.mean())] * MONTHS_PER_YEAR)
+            twelve = _twelve(rule, valid_discharge)
+            fixed.append([q if m in months else 0.0 for m, q in enumerate(twelve, 1)])
     racks = waterway_of(model.waterway, model.site).racks_by_month
-    return WaterRules.by_month(fixed, shares, abstractions(model), also=[racks])
+    return WaterRules.by_month(fixed, by_inflow, abstractions(model), also=[racks])
+
+
+def _twelve(rule: Any, valid_discharge: Floats) -> list[float]:
+    """Discharge that a rule keeps in each month, January first [m3/s]."""
+    if rule.rule == "preset":
+        return PRESETS[rule.name].flows(valid_discharge)
+    if rule.rule == "monthly":
+        return list(rule.discharge)
+    if rule.rule == "constant":
+        flow = rule.discharge
+    elif rule.rule == "exceedance":
+        flow = float(quantile(valid_discharge, rule.percent))
+    else:
+        flow = rule.share * float(valid_discharge.mean())
+    return [flow] * MONTHS_PER_YEAR
 
 
 def abstractions(model: SiteFile) -> list[Abstraction]:

@@ -212,7 +212,8 @@ def _table_checks(model: SiteFile) -> Iterable[Check]:
         + ("" if open_share <= 0.1 else " Give discharges at smaller and larger percentages."),
     )
     by_month = any(taken.months for taken in model.abstractions) or any(
-        rule.rule == "monthly" and len(set(rule.discharge)) > 1 for rule in model.environmental_flow
+        rule.months or (rule.rule == "monthly" and len(set(rule.discharge)) > 1)
+        for rule in model.environmental_flow
     )
     if by_month:
         yield Check(

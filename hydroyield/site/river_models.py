@@ -2,29 +2,59 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
+from functools import partial
 from typing import Annotated, Any, ClassVar, Literal
 
-from pydantic import AfterValidator, Field, WrapValidator
+from pydantic import BeforeValidator, Field, WithJsonSchema, WrapValidator
 from pydantic import ValidatorFunctionWrapHandler as Handler
 
 from hydroyield.quantities import DISCHARGE, PERCENT, SHARE
 from hydroyield.site.blocks import Block
-from hydroyield.site.faults import closest, flow, refuse, shown
-from hydroyield.site.fields import ListOf, Quantity, Switch, Text
-from hydroyield.site.months import Months
+from hydroyield.site.faults import Finding, closest, flow, refuse, shown
+from hydroyield.site.fields import Choice, Quantity, Switch, Text
+from hydroyield.site.months import MONTHS_PER_YEAR, TWELVE_SCHEMA, Months, read_twelve
+from hydroyield.site.tables import Pairs, Table
 
-MONTHS_PER_YEAR = 12
 ReservedDischarge = Annotated[float, Quantity(DISCHARGE, at_least=0)]
+PRESET_NAMES = (
+    "swiss_q347",
+    "czech_1998",
+    "french_tenth",
+    "tennant_outstanding",
+    "tennant_excellent",
+    "tennant_good",
+    "tennant_fair",
+    "tennant_poor",
+)  # those of river.presets, kept here so that reading a site file needs no numbers
 
 
-def _twelve(values: tuple[float, ...]) -> tuple[float, ...]:
-    if len(values) != MONTHS_PER_YEAR:
-        raise ValueError(f"has {len(values)} values; write 12, one for each month, January first")
-    return values
+_FLOW = Quantity(DISCHARGE, at_least=0)
 
 
-class ConstantRule(Block):
+class FlowRule(Block):
+    """What every rule may say beside its numbers."""
+
+    months: Months | None = Field(
+        default=None,
+        description="Months in which the rule holds, such as 3, mar or mar-may; all year if left "
+        "out.",
+        examples=[[3, 4, 5]],
+    )
+    permit: Text | None = Field(
+        default=None,
+        description="Number of the permit that states the rule, for the report; shown as not "
+        "stated if left out.",
+        examples=["WR 112/2019"],
+    )
+    date: Text | None = Field(
+        default=None,
+        description="Date of the permit, for the report; shown as not stated if left out.",
+        examples=["2019-05-14"],
+    )
+
+
+class ConstantRule(FlowRule):
     """The same discharge stays in the river all year."""
 
     example: ClassVar[dict[str, Any]] = {"rule": "constant", "discharge": "0.6 m3/s"}
@@ -35,22 +65,24 @@ class ConstantRule(Block):
     )
 
 
-class MonthlyRule(Block):
+class MonthlyRule(FlowRule):
     """A discharge for each calendar month stays in the river."""
 
     example: ClassVar[dict[str, Any]] = {"rule": "monthly", "discharge": [0.6] * MONTHS_PER_YEAR}
 
     rule: Literal["monthly"] = Field(description="Name of the rule.", examples=["monthly"])
     discharge: Annotated[
-        tuple[ReservedDischarge, ...], AfterValidator(_twelve), ListOf("0.6 m3/s, ...")
+        tuple[float, ...],
+        BeforeValidator(partial(read_twelve, quantity=_FLOW)),
+        WithJsonSchema(TWELVE_SCHEMA),
     ] = Field(
-        description="Discharges that stay in the river [m3/s]: 12 values, January first.",
+        description="Discharges that stay in the river, in m3/s: 12 values, January first, or "
+        "ranges such as {apr-sep: 0.8, oct-mar: 0.5}.",
         examples=[[0.6] * MONTHS_PER_YEAR],
-        json_schema_extra={"minItems": MONTHS_PER_YEAR, "maxItems": MONTHS_PER_YEAR},
     )
 
 
-class ExceedanceRule(Block):
+class ExceedanceRule(FlowRule):
     """The discharge equalled or exceeded in a percentage of the days stays in the river."""
 
     example: ClassVar[dict[str, Any]] = {"rule": "exceedance", "percent": 95}
@@ -63,7 +95,7 @@ class ExceedanceRule(Block):
     )
 
 
-class MeanShareRule(Block):
+class MeanShareRule(FlowRule):
     """A share of the mean discharge of the record at the site stays in the river."""
 
     example: ClassVar[dict[str, Any]] = {"rule": "mean_share", "share": "10 %"}
@@ -74,7 +106,7 @@ class MeanShareRule(Block):
     )
 
 
-class InflowShareRule(Block):
+class InflowShareRule(FlowRule):
     """Everything up to a discharge, and a share of what exceeds it, stays in the river."""
 
     example: ClassVar[dict[str, Any]] = {
@@ -94,15 +126,67 @@ class InflowShareRule(Block):
         description="Discharge up to which everything stays in the river [m3/s].",
         examples=["1.2 m3/s"],
     )
+    maximum_take: Annotated[float, Quantity(DISCHARGE, above=0)] | None = Field(
+        default=None,
+        description="The most that may be taken, whatever the inflow [m3/s]; no limit if left out.",
+        examples=["5 m3/s"],
+    )
 
 
-AnyRule = ConstantRule | MonthlyRule | ExceedanceRule | MeanShareRule | InflowShareRule
+def _from_zero(table: Table) -> Iterable[Finding]:
+    if table[0][0] > 0:
+        yield (0, 0), "the first step begins above 0; write the discharge that stays from 0 m3/s on"
+
+
+class StepsRule(FlowRule):
+    """A discharge stays in the river that goes up in steps with the inflow."""
+
+    example: ClassVar[dict[str, Any]] = {
+        "rule": "steps",
+        "steps": [["0 m3/s", "0.4 m3/s"], ["2 m3/s", "0.7 m3/s"]],
+    }
+
+    rule: Literal["steps"] = Field(description="Name of the rule.", examples=["steps"])
+    steps: Annotated[
+        Table,
+        Pairs(
+            _FLOW, _FLOW, ("inflow", "discharge"), "[[0, 0.4 m3/s], [2 m3/s, 0.7 m3/s]]", _from_zero
+        ),
+    ] = Field(
+        description="Pairs of the inflow from which a step holds [m3/s] and the discharge that "
+        "stays in the river [m3/s].",
+        examples=[[["0 m3/s", "0.4 m3/s"], ["2 m3/s", "0.7 m3/s"]]],
+    )
+
+
+class PresetRule(FlowRule):
+    """A published rule, as an example with its date; never the law of the day."""
+
+    example: ClassVar[dict[str, Any]] = {"rule": "preset", "name": "swiss_q347"}
+
+    rule: Literal["preset"] = Field(description="Name of the rule.", examples=["preset"])
+    name: Annotated[str, Choice(tuple(PRESET_NAMES))] = Field(
+        description="Which: " + ", ".join(PRESET_NAMES) + ".", examples=["swiss_q347"]
+    )
+
+
+AnyRule = (
+    ConstantRule
+    | MonthlyRule
+    | ExceedanceRule
+    | MeanShareRule
+    | InflowShareRule
+    | StepsRule
+    | PresetRule
+)
 RULES: dict[str, type[Block]] = {
     "constant": ConstantRule,
     "monthly": MonthlyRule,
     "exceedance": ExceedanceRule,
     "mean_share": MeanShareRule,
     "inflow_share": InflowShareRule,
+    "steps": StepsRule,
+    "preset": PresetRule,
 }
 
 

@@ -2,20 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from typing import Annotated, Any, ClassVar, Literal, get_args
 
 from pydantic import BeforeValidator, Field, WithJsonSchema
 
 from hydroyield.quantities import ANGLE, AREA, LENGTH, NUMBER, SHARE
 from hydroyield.site.blocks import Block
-from hydroyield.site.faults import Finding, refuse
+from hydroyield.site.faults import Finding
 from hydroyield.site.fields import NUMBER_OR_TEXT, Choice, Quantity, Whole
+from hydroyield.site.months import MONTHS_PER_YEAR, TWELVE_SCHEMA, read_twelve
 
 BarShape = Literal["rectangular", "rounded_upstream", "rounded_both", "circular", "teardrop"]
 PositiveLength = Annotated[float, Quantity(LENGTH, above=0)]
 PositiveArea = Annotated[float, Quantity(AREA, above=0)]
-MONTHS_PER_YEAR = 12
 
 _BLOCKAGE = Quantity(SHARE, at_least=0, below=1, example="10 %")
 
@@ -60,21 +60,9 @@ class Pipe(Block):
 
 def _blockages(value: object) -> tuple[float, ...]:
     """One share for the whole year, or twelve."""
-    if not isinstance(value, list | tuple):
-        return (_BLOCKAGE.read(value),) * MONTHS_PER_YEAR
-    if len(value) != MONTHS_PER_YEAR:
-        raise ValueError(
-            f"has {len(value)} values; write one, or 12, one for each month, January first"
-        )
-    shares, findings = [], []
-    for index, share in enumerate(value):
-        try:
-            shares.append(_BLOCKAGE.read(share))
-        except ValueError as error:
-            findings.append(((index,), str(error)))
-    if findings:
-        refuse(findings)
-    return tuple(shares)
+    if isinstance(value, list | tuple | Mapping):
+        return read_twelve(value, _BLOCKAGE)
+    return (_BLOCKAGE.read(value),) * MONTHS_PER_YEAR
 
 
 class TrashRack(Block):
@@ -108,23 +96,11 @@ class TrashRack(Block):
     blockage: Annotated[
         tuple[float, ...],
         BeforeValidator(_blockages),
-        WithJsonSchema(
-            {
-                "anyOf": [
-                    *NUMBER_OR_TEXT,
-                    {
-                        "type": "array",
-                        "items": {"anyOf": NUMBER_OR_TEXT},
-                        "minItems": MONTHS_PER_YEAR,
-                        "maxItems": MONTHS_PER_YEAR,
-                    },
-                ]
-            }
-        ),
+        WithJsonSchema({"anyOf": [*NUMBER_OR_TEXT, *TWELVE_SCHEMA["anyOf"]]}),
     ] = Field(
         default=(0.0,) * MONTHS_PER_YEAR,
-        description="Share of the area that trash has closed, one for the year or 12 by month, "
-        "January first; 0 if left out.",
+        description="Share of the area that trash has closed, one for the year, 12 by month, "
+        "January first, or ranges such as {sep-nov: 40 %, dec-aug: 10 %}; 0 if left out.",
         examples=["10 %"],
     )
 

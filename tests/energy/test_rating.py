@@ -69,7 +69,7 @@ def test_head_of_the_month_that_feeds_the_units_first() -> None:
 def test_head_where_a_share_of_the_inflow_stays() -> None:
     """1 m3/s and half of what exceeds it stay: 5 = (Q - 1) / 2 at 11 m3/s, tailwater 0.11 m."""
     heads = Heads(FixedLevel(10.0), LevelTable((0.0, 100.0), (0.0, 1.0)))
-    rules = WaterRules.by_month(shares=[InflowShare(0.5, 1.0)])
+    rules = WaterRules.by_month(inflow_rules=[InflowShare(0.5, 1.0)])
     assert only([specified(discharge=5.0)], setting(heads, rules)).rated_head == pytest.approx(9.89)
 
 

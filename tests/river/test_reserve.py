@@ -10,12 +10,19 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from hydroyield.river.duration import quantile
-from hydroyield.river.reserve import Abstraction, InflowShare, WaterRules
+from hydroyield.river.presets import PRESETS, czech_residual_flow, swiss_residual_flow
+from hydroyield.river.reserve import Abstraction, InflowShare, InflowSteps, WaterRules
 
 flows = st.floats(0, 60, allow_subnormal=False)
 months = st.sets(st.integers(1, 12), min_size=1).map(lambda chosen: tuple(sorted(chosen)))
 tables = st.lists(st.sampled_from([0.0, 0.3, 1.7, 8.0]), min_size=12, max_size=12)
-shares = st.builds(InflowShare, st.floats(0, 1), st.floats(0, 20, allow_subnormal=False))
+shares = st.builds(
+    InflowShare,
+    st.floats(0, 1),
+    st.floats(0, 20, allow_subnormal=False),
+    st.sampled_from([np.inf, 0.5, 7.0]),
+    months,
+)
 abstractions = st.builds(
     Abstraction,
     st.just("mill"),
@@ -43,6 +50,9 @@ class Case:
         for twelve in self.fixed:
             largest = max(largest, twelve[month - 1])
         for rule in self.shares:
+            if month not in rule.months:
+                continue
+            largest = max(largest, flow - rule.most_taken)
             exceeding = max(0.0, flow - rule.above)
             largest = max(largest, flow - exceeding + rule.share * exceeding)
         return min(flow, largest)
@@ -192,3 +202,78 @@ def test_smallest_discharge_offering_against_a_scan(case: Case, wanted: float) -
         return
     assert min(reached) - step <= found <= min(reached) + 1e-9
     assert rules.offered(np.array([found]), np.array([season]))[0] >= wanted
+
+
+def test_steps_against_the_inflow_by_hand() -> None:
+    steps = InflowSteps((0.0, 2.0, 5.0), (0.5, 1.0, 2.5), months=(5, 6))
+    rules = WaterRules.by_month([[0.7] * 12], [steps])
+    river = np.array([0.3, 1.9, 2.0, 4.9, 5.0, 9.0])
+    may = np.full(6, rules.season_of_month[4])
+    january = np.full(6, rules.season_of_month[0])
+    assert rules.environmental_flow(river, may).tolist() == [0.3, 0.7, 1.0, 1.0, 2.5, 2.5]
+    assert rules.environmental_flow(river, january).tolist() == [0.3, 0.7, 0.7, 0.7, 0.7, 0.7]
+
+
+def test_a_hands_off_flow_with_a_largest_take_by_hand() -> None:
+    """Half of what exceeds 2 m3/s may be taken, and never more than 3."""
+    rules = WaterRules.by_month(inflow_rules=[InflowShare(0.5, 2.0, most_taken=3.0)])
+    river = np.array([1.0, 2.0, 4.0, 8.0, 20.0])
+    assert rules.offered(river, np.zeros(5, int)).tolist() == [0.0, 0.0, 1.0, 3.0, 3.0]
+
+
+@pytest.mark.parametrize("wanted", [0.9, 1.2, 2.0, 3.4, 3.6])
+def test_first_discharge_that_offers_enough_where_steps_fall_back(wanted: float) -> None:
+    """At 5 m3/s the step takes back what was offered just below it; a fine grid finds the first."""
+    rules = WaterRules.by_month(inflow_rules=[InflowSteps((0.0, 2.0, 5.0), (0.5, 1.0, 3.5))])
+    found, _ = rules.smallest_discharge_offering(wanted, 9.0)
+    grid = np.linspace(0, 9, 900_001)
+    offered = rules.offered(grid, np.zeros(grid.size, int))
+    assert found == pytest.approx(grid[(offered >= wanted - 1e-9).argmax()], abs=2e-5)
+
+
+# --- published rules ------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("q347", "kept"),
+    [
+        (40, 50), (60, 50), (100, 82), (160, 130), (300, 191.6), (500, 280), (1000, 435),
+        (2500, 900), (5000, 1432.5), (10_000, 2500), (20_000, 4000), (60_000, 10_000),
+        (90_000, 10_000),
+    ],
+)  # fmt: skip
+def test_residual_flow_of_the_swiss_act(q347: float, kept: float) -> None:
+    """GSchG, SR 814.20, Art. 31(1), in l/s: the printed values, and between them the printed
+    increments (8 per 10, 4.4 per 10, 31 per 100, 21.3 per 100, 150 per 1000), by hand."""
+    assert swiss_residual_flow(q347 / 1000) == pytest.approx(kept / 1000)
+
+
+@pytest.mark.parametrize(
+    ("q330", "q355", "q364", "kept"),
+    [
+        (0.06, 0.04, 0.03, 0.06), (0.30, 0.20, 0.10, 0.25), (4.0, 3.0, 2.0, 3.0),
+        (9.0, 7.0, 5.0, 6.0),
+    ],
+)  # fmt: skip
+def test_residual_flow_of_the_czech_guideline(
+    q330: float, q355: float, q364: float, kept: float
+) -> None:
+    """Guideline of 1998 by Q355d: below 0.05 m3/s Q330d; to 0.5 the mean of both; to 5.0 Q355d;
+    above the mean of Q355d and Q364d."""
+    assert czech_residual_flow(q330, q355, q364) == pytest.approx(kept)
+
+
+def test_french_and_tennant_shares_of_the_mean() -> None:
+    """L.214-18: 20 m3/s keep 2.0, 100 keep 5.0. Tennant 1976: fair is 10 % in October to March and
+    30 % in April to September."""
+    assert PRESETS["french_tenth"].flows(np.full(10, 20.0)) == pytest.approx([2.0] * 12)
+    assert PRESETS["french_tenth"].flows(np.full(10, 100.0)) == pytest.approx([5.0] * 12)
+    fair = PRESETS["tennant_fair"].flows(np.full(10, 8.0))
+    assert fair == pytest.approx([0.8] * 3 + [2.4] * 6 + [0.8] * 3)
+
+
+def test_presets_count_days_of_a_year_of_365() -> None:
+    """Q347 is exceeded on 347 of 365 days, 95.07 % of the time."""
+    record = np.arange(1.0, 100.0) / 10
+    q347 = float(quantile(record, 100 * 347 / 365))
+    assert PRESETS["swiss_q347"].flows(record) == pytest.approx([swiss_residual_flow(q347)] * 12)
