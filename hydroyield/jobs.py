@@ -14,6 +14,7 @@ from hydroyield.errors import Fault, RecordError
 from hydroyield.evidence import audit
 from hydroyield.evidence.doubts import Rerun, doubts_of, rerun, suspects_of, year_doubts
 from hydroyield.evidence.outages import with_placed_outage
+from hydroyield.evidence.rule_costs import rule_costs
 from hydroyield.record import Receipt, Record, read_record
 from hydroyield.record.joining import read_records
 from hydroyield.record.options import RecordOptions
@@ -36,6 +37,7 @@ class SiteEstimate(Estimate):
     measured : the discharge record as it was read; None with a duration table
     reference : the reference record; None without one
     river : how the record became the river at the site
+    rule_costs : energy that each rule for the environmental flow costs, and all together [MWh]
     reruns : the energy of other readings of the record, where there is a doubt about it
     checks : every check of the result
     """
@@ -44,6 +46,7 @@ class SiteEstimate(Estimate):
     measured: Record | None
     reference: Record | None
     river: RiverAtSite
+    rule_costs: tuple[float, ...]
     reruns: tuple[Rerun, ...]
     checks: tuple[Check, ...]
 
@@ -101,6 +104,7 @@ def _concluded(
         measured=record,
         reference=reference,
         river=assembled.river,
+        rule_costs=rule_costs(site, energy),
         reruns=reruns,
         checks=audit(site, record, assembled, energy, doubts, reruns),
     )

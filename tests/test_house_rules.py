@@ -96,9 +96,9 @@ UNIT_OF_SUFFIX = {
 }  # fmt: skip
 # counts, and what has its unit in the message beside it
 WITHOUT_SUFFIX = {
-    "correlation", "count", "date", "days", "filled", "intercept", "limit", "low_flow_count",
-    "low_flow_start_month", "month", "rows_read", "rows_used", "slope", "value", "year",
-    "year_start_month",
+    "correlation", "count", "date", "days", "days_at_residual_flow", "filled", "intercept",
+    "limit", "low_flow_count", "low_flow_start_month", "month", "rows_read", "rows_used", "slope",
+    "value", "year", "year_start_month",
 }  # fmt: skip
 # labels and settings, no quantities: version of the format, seed, counts by a reason in words
 NO_QUANTITY = {"format", "seed", "rows_dropped", "first_lines_dropped", "flags"}

@@ -239,3 +239,74 @@ def test_a_generator_poor_at_part_load_by_hand(tmp_path: Path) -> None:
     rows = ledger(found)
     lost = (shaft - output) * 24 * DAYS / 4e6
     assert rows["drive_and_generator"] == pytest.approx(-lost, rel=1e-4)
+
+
+# --- environmental flow ---------------------------------------------------------------------------
+
+
+def test_what_each_rule_costs(tmp_path: Path) -> None:
+    free = estimate(tmp_path).mean_annual_energy_mwh
+    one = "{rule: constant, discharge: 0.5}"
+    two = "{rule: constant, discharge: 0.9, months: jun-aug}"
+    small = "{rule: constant, discharge: 0.1}"
+    only_one = estimate(tmp_path, environmental_flow=f"[{one}]")
+    only_two = estimate(tmp_path, environmental_flow=f"[{two}]")
+    found = estimate(tmp_path, environmental_flow=f"[{one}, {two}, {small}]")
+    energy = found.mean_annual_energy_mwh
+    expected = (
+        only_two.mean_annual_energy_mwh - energy,  # without the first, small where two is not
+        only_one.mean_annual_energy_mwh - energy,
+        0.0,
+        free - energy,
+    )
+    assert found.rule_costs[1:] == pytest.approx(expected[1:], abs=1e-6)
+    assert 0 < found.rule_costs[0] < expected[0]  # the small rule takes its place in part
+    assert only_one.rule_costs == pytest.approx([free - only_one.mean_annual_energy_mwh] * 2)
+
+
+def test_days_at_the_residual_flow_by_hand(tmp_path: Path) -> None:
+    found = estimate(tmp_path, environmental_flow="[{rule: constant, discharge: 0.5}]")
+    offered = np.maximum(0, RIVER - 0.5)
+    least = (offered >= 0.2 * 3) & (offered <= 3.0 + 1e-12)
+    assert found.days_at_residual_flow == pytest.approx(least.sum() / 4)
+
+
+def test_a_preset_is_shown_as_an_example(tmp_path: Path) -> None:
+    found = estimate(tmp_path, environmental_flow="[{rule: preset, name: swiss_q347}]")
+    assert "not the law of the day" in check(found, "preset_rule").message
+
+
+# --- transformer and imports ----------------------------------------------------------------------
+
+
+def test_losses_of_a_transformer_and_imports_by_hand(tmp_path: Path) -> None:
+    """A river of 1.2 m3/s for half of the days, dry on the others: 0.6 kW all year, 2.4 kW x
+    (load)^2 while it runs, and 0.8 kW more while it stands."""
+    values = np.where(np.arange(DAYS) % 2 == 0, 1.2, 0.0)
+    plain = estimate(tmp_path, values)
+    stated = (
+        "{transformer_no_load_loss: 0.6 kW, transformer_load_loss: 2.4 kW, standing_use: 0.8 kW, "
+        "own_use: 1 kW}"
+    )
+    found = estimate(tmp_path, values, electrical=stated)
+    power = float(plain.net_power.max()) / 1000
+    load = power / plain.installed_capacity_kw
+    running = power - 0.6 - 2.4 * load**2 - 1.0
+    share = float((values > 0).mean())
+    hours = 24 * DAYS / 4 / 1000
+    by_hand = hours * (share * running - (1 - share) * 1.4)
+    assert found.mean_annual_energy_mwh == pytest.approx(by_hand, rel=2e-3)
+    rows = ledger(found)
+    assert rows["imports"] == pytest.approx(-hours * (1 - share) * 1.4, rel=2e-3)
+    assert rows["transformer"] == pytest.approx(-hours * share * (0.6 + 2.4 * load**2), rel=2e-3)
+    curve = found.power_duration()
+    assert curve["power_kw"].min() == pytest.approx(-1.4)
+    assert found.duration_integral_energy_mwh == pytest.approx(found.mean_annual_energy_mwh)
+
+
+def test_a_plant_out_of_service_imports_too(tmp_path: Path) -> None:
+    stated = "{standing_use: 2 kW}"
+    always = estimate(tmp_path, electrical=stated)
+    closed = estimate(tmp_path, electrical=stated, operation="{closed: jul}")
+    assert closed.monthly_energy_mwh[6] == pytest.approx(-2 * 24 * 31 / 1000)
+    assert ledger(closed)["imports"] < ledger(always)["imports"]

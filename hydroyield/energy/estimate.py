@@ -183,6 +183,16 @@ class Estimate:
         kept = self.scheme.rules.reserved_for_river(self.cells.discharge, self.cells.season)
         return float(kept[self.cells.cell_of_day].mean())
 
+    @property
+    def days_at_residual_flow(self) -> float:
+        """Days a year on which the plant takes all that it may, all units in service [d].
+
+        The reach below the intake then has no more than what the rules keep in it.
+        """
+        cells, run = self.cells, self.operation
+        all_taken = (run.turbined > 0) & (run.turbined >= run.offered * (1 - 1e-9))
+        return float(cells.weight[all_taken].sum() / HOURS_PER_DAY)
+
     # --- cross-checks and tables ----------------------------------------------------------------
 
     @property
@@ -319,8 +329,8 @@ def _run(scheme: Scheme, cells: Cells, left_out: dict[str, str]) -> Estimate:
 def _state(scheme: Scheme, cells: Cells, counts: tuple[int, ...], chance: Floats) -> PlantState:
     weight = cells.weight_of(chance)
     if not any(counts):
-        nothing = np.zeros(cells.discharge.size)
-        return PlantState(counts, chance, weight, None, nothing)
+        standing = scheme.net_power(np.zeros(cells.discharge.size))
+        return PlantState(counts, chance, weight, None, standing)
     part = scheme.with_units(counts)
     run = part.operate(cells.discharge, cells.season)
     return PlantState(counts, chance, weight, run, part.net_power(run.output))

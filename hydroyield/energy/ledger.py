@@ -31,8 +31,9 @@ STEPS = (
     "transformer",
     "own_use",
     "export_limit",
-    "net",
+    "imports",
 )
+RARE = ("imports",)  # rows that stand only where there is something in them
 
 
 def reference_head(scheme: Scheme) -> float:
@@ -63,7 +64,9 @@ def ledger(
     for run, weight in runs:
         for step, power in _rates(scheme, cells, full, run):
             rows[step] = rows.get(step, 0.0) + float((weight * power).sum()) / WH_PER_MWH
-    rows = {step: rows.get(step, 0.0) for step in STEPS[:-1]}
+    if not scheme.plant.electrical.imported:
+        del rows["imports"]  # the row of a plant that takes something while it stands
+    rows = {step: rows.get(step, 0.0) for step in STEPS if step in rows or step not in RARE}
     return [*rows.items(), ("net", sum(rows.values()))]
 
 
@@ -80,20 +83,23 @@ def _rates(
     yield "reserved", -of_water * (cells.discharge - full.offered)
     for step, water in _unused_water(full):
         yield step, -of_water * water
+    electrical = scheme.plant.electrical
     if run is None:
         yield "outage", -of_water * full.turbined
+        yield "imports", np.full(full.turbined.size, -electrical.imported)
         return
     yield "outage", -of_water * (full.turbined - run.turbined)
     yield "levels", weight * run.turbined * run.gross_head - of_water * run.turbined
     yield "waterway", -weight * run.turbined * (run.gross_head - run.net_head)
-    electrical = scheme.plant.electrical
     yield "turbine", run.shaft - weight * run.turbined * run.net_head
     yield "drive_and_generator", run.output - run.shaft
-    yield "transformer", -run.output * (1 - electrical.transformer)
-    exported = run.output * electrical.transformer
-    own_use = np.minimum(exported, electrical.own_use * (run.output > 0))
+    runs = run.output > 0
+    exported = np.where(runs, electrical.behind_transformer(run.output), 0.0)
+    yield "transformer", exported - run.output
+    own_use = np.minimum(exported, electrical.own_use * runs)
     yield "own_use", -own_use
-    yield "export_limit", scheme.net_power(run.output) - (exported - own_use)
+    yield "export_limit", np.where(runs, scheme.net_power(run.output) - (exported - own_use), 0.0)
+    yield "imports", np.where(runs, 0.0, -electrical.imported)
 
 
 def _unused_water(run: Operation) -> Iterator[tuple[str, Floats]]:

@@ -108,8 +108,12 @@ class Scheme:
         return np.asarray(np.divide(lost, turbined, out=heads, where=turbined > 0))
 
     def net_power(self, output: Floats) -> Floats:
-        """Power delivered after transformer, own use and export limit [W]."""
-        electrical = self.plant.electrical
-        after_own_use = output * electrical.transformer - electrical.own_use * (output > 0)
+        """Power delivered after transformer, own use and export limit [W].
+
+        What a standing plant takes from the grid is negative.
+        """
+        electrical, runs = self.plant.electrical, output > 0
+        after_own_use = electrical.behind_transformer(output) - electrical.own_use * runs
         limit = np.inf if electrical.export_limit is None else electrical.export_limit
-        return np.minimum(np.maximum(0.0, after_own_use), limit)
+        delivered = np.minimum(np.maximum(0.0, after_own_use), limit)
+        return np.where(runs, delivered, -electrical.imported)

@@ -186,6 +186,10 @@ class Electrical:
     drive, generator, transformer : efficiencies, 0 to 1; that of the generator at full load
     load_curve : of the generators; None where their efficiency is the same at every load
     own_use : taken while any unit runs [W]
+    standing_use : taken while none runs [W]
+    no_load_loss : of the transformer, all year [W]
+    load_loss : of the transformer at `load_loss_at` [W]; it grows with the square of the load
+    load_loss_at : output at the terminals [W]
     export_limit : after all losses [W]; None without one
     """
 
@@ -195,6 +199,20 @@ class Electrical:
     own_use: float = 0.0
     export_limit: float | None = None
     load_curve: LoadCurve | None = None
+    standing_use: float = 0.0
+    no_load_loss: float = 0.0
+    load_loss: float = 0.0
+    load_loss_at: float = 1.0
+
+    @property
+    def imported(self) -> float:
+        """Taken from the grid while no unit runs [W]."""
+        return self.standing_use + self.no_load_loss
+
+    def behind_transformer(self, output: Floats) -> Floats:
+        """Power behind the transformer of a running plant [W], from that at the terminals [W]."""
+        load_loss = self.load_loss * (output / self.load_loss_at) ** 2
+        return np.maximum(0.0, output * self.transformer - self.no_load_loss - load_loss)
 
     @property
     def at_terminals(self) -> float:

@@ -153,6 +153,7 @@ def _basis(estimate: SiteEstimate) -> Rows:
     rules = words.environmental_flow(model)
     title = "Environmental flow" + (", the largest of" if len(rules) > 1 else "")
     rows.append((title, "; ".join(rules) or "none stated"))
+    rows += _rule_costs(estimate)
     rows += [("Abstraction", text) for text in words.abstractions(model)]
     rows += [
         ("Headwater", words.headwater(model)),
@@ -165,6 +166,18 @@ def _basis(estimate: SiteEstimate) -> Rows:
         ("Shutdown", f"above {words.discharge(shutdown)} in the river" if shutdown else "none")
     )
     return rows
+
+
+def _rule_costs(estimate: SiteEstimate) -> Rows:
+    if not estimate.rule_costs:
+        return []
+    *each, together = (f"{rounded(max(0.0, mwh))} MWh" for mwh in estimate.rule_costs)
+    apart = f" (rule by rule {', '.join(each)}; rules overlap)" if len(each) > 1 else ""
+    days = f"{estimate.days_at_residual_flow:.0f} days a year"
+    return [
+        ("Cost of environmental flow", f"{together} a year{apart}"),
+        ("Reach at its residual flow", days),
+    ]
 
 
 def _of_record(estimate: SiteEstimate) -> Rows:

@@ -40,6 +40,8 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
         "exceedance_discharge_m3s": estimate.exceedance_discharge_m3s,
         "characteristic_discharge_m3s": estimate.characteristic_discharge_m3s,
         "environmental_flow_mean_m3s": estimate.environmental_flow_mean_m3s,
+        "days_at_residual_flow": estimate.days_at_residual_flow,
+        "environmental_flow_costs": _rule_costs(estimate),
         "turbines": _turbines(estimate),
         "density_kg_m3": estimate.scheme.plant.density,
         "gravity_m_s2": estimate.scheme.plant.gravity,
@@ -127,6 +129,14 @@ def _transfer(estimate: SiteEstimate) -> dict[str, Any]:
             "zero": list(fit.zero),
         }
     return facts
+
+
+def _rule_costs(estimate: SiteEstimate) -> list[dict[str, Any]]:
+    names = [rule.rule for rule in estimate.site.model.environmental_flow]
+    return [
+        {"rule": name, "energy_mwh": mwh}
+        for name, mwh in zip([*names, "all"], estimate.rule_costs, strict=bool(names))
+    ]
 
 
 def _turbines(estimate: SiteEstimate) -> list[dict[str, Any]]:

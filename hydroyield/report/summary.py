@@ -36,6 +36,7 @@ LEDGER_NAMES = {
     "transformer": "losses of the transformer",
     "own_use": "own use",
     "export_limit": "above the export limit",
+    "imports": "taken from the grid while standing",
     "net": "delivered",
 }
 

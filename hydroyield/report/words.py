@@ -225,6 +225,15 @@ def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
         if own_use is None
         else f"{rounded(own_use / W_PER_KW)} kW while running",
     )
+    if given.transformer_no_load_loss or given.transformer_load_loss:
+        idle, loaded = given.transformer_no_load_loss or 0, given.transformer_load_loss or 0
+        yield (
+            "Transformer losses",
+            f"{rounded(idle / W_PER_KW)} kW at any load, {rounded(loaded / W_PER_KW)} kW more at "
+            "full capacity",
+        )
+    if given.standing_use:
+        yield "Taken while standing", f"{rounded(given.standing_use / W_PER_KW)} kW"
     yield "Export limit", "none" if limit is None else f"{rounded(limit / W_PER_KW)} kW"
 
 

@@ -261,6 +261,9 @@ def electrical(model: SiteFile) -> Electrical:
         own_use=given.own_use or 0.0,
         export_limit=given.export_limit,
         load_curve=curve,
+        standing_use=given.standing_use or 0.0,
+        no_load_loss=given.transformer_no_load_loss or 0.0,
+        load_loss=given.transformer_load_loss or 0.0,
     )
 
 
@@ -316,9 +319,10 @@ def _plant(
     ]  # fmt: skip
     if faults:
         raise SiteFileError(faults)
+    capacity = sum(group.count * group.unit_capacity for group in groups)
     return Plant(
         groups=groups,
-        electrical=chain,
+        electrical=replace(chain, load_loss_at=capacity),
         density=water,
         gravity=fall,
         minimum_net_head=model.head.minimum_net_head or 0.0,

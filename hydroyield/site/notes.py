@@ -113,7 +113,13 @@ def left_out(site: SiteDescription) -> list[Note]:
         ),
         (electrical.drive_efficiency is None, "electrical.drive_efficiency", "no loss"),
         (electrical.generator_efficiency is None, "electrical.generator_efficiency", "no loss"),
-        (electrical.transformer_efficiency is None, "electrical.transformer_efficiency", "no loss"),
+        (
+            electrical.transformer_efficiency is None
+            and electrical.transformer_no_load_loss is None
+            and electrical.transformer_load_loss is None,
+            "electrical.transformer_efficiency",
+            "no loss",
+        ),
         (electrical.own_use is None, "electrical.own_use", "the plant itself uses nothing"),
         (electrical.export_limit is None, "electrical.export_limit", "the grid takes everything"),
         (operation.shutdown_above is None, "operation.shutdown_above", "runs in any flood"),

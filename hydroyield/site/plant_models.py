@@ -227,12 +227,44 @@ class Electrical(Block):
         description="Power that the plant itself uses while any unit runs [kW]; none if left out.",
         examples=["1.5 kW"],
     )
+    standing_use: Annotated[float, Quantity(POWER, at_least=0)] | None = Field(
+        default=None,
+        description="Power that the plant takes from the grid while no unit runs [kW]; none if "
+        "left out.",
+        examples=["0.8 kW"],
+    )
+    transformer_no_load_loss: Annotated[float, Quantity(POWER, at_least=0)] | None = Field(
+        default=None,
+        description="Loss of the transformer at any load, all year and while the plant stands "
+        "[kW]; none if left out.",
+        examples=["0.6 kW"],
+    )
+    transformer_load_loss: Annotated[float, Quantity(POWER, at_least=0)] | None = Field(
+        default=None,
+        description="Further loss of the transformer with all units at capacity, growing with the "
+        "square of the load [kW]; none if left out.",
+        examples=["2.4 kW"],
+    )
     export_limit: Annotated[float, Quantity(POWER, above=0)] | None = Field(
         default=None,
         description="The most that may be fed into the grid, after all losses [kW]; no limit if "
         "left out.",
         examples=["220 kW"],
     )
+
+    @classmethod
+    def keys_fit_together(
+        cls, named: AbstractSet[str], written: Mapping[str, Any]
+    ) -> Iterable[Finding]:
+        """The losses of a transformer are stated in one way."""
+        if "transformer_efficiency" in named:
+            for key in ("transformer_no_load_loss", "transformer_load_loss"):
+                if key in named:
+                    yield (
+                        (key,),
+                        f"'{key}' and 'transformer_efficiency' state the same loss; keep one of "
+                        "the two ways",
+                    )
 
 
 class PlannedOutage(Block):

@@ -30,6 +30,7 @@ LEDGER_LABELS = {
     "transformer": "transformer losses",
     "own_use": "own use",
     "export_limit": "above export limit",
+    "imports": "imports while standing",
     "net": "delivered",
 }
 
