@@ -31,9 +31,9 @@ STEPS = (
     "transformer",
     "own_use",
     "export_limit",
-    "imports",
+    "net",
 )
-RARE = ("imports",)  # rows that stand only where there is something in them
+IMPORTS = "imports"  # a row before the net, where a standing plant takes something
 
 
 def reference_head(scheme: Scheme) -> float:
@@ -64,9 +64,10 @@ def ledger(
     for run, weight in runs:
         for step, power in _rates(scheme, cells, full, run):
             rows[step] = rows.get(step, 0.0) + float((weight * power).sum()) / WH_PER_MWH
-    if not scheme.plant.electrical.imported:
-        del rows["imports"]  # the row of a plant that takes something while it stands
-    rows = {step: rows.get(step, 0.0) for step in STEPS if step in rows or step not in RARE}
+    steps = [*STEPS[:-1]]
+    if scheme.plant.electrical.imported:
+        steps.append(IMPORTS)
+    rows = {step: rows.get(step, 0.0) for step in steps}
     return [*rows.items(), ("net", sum(rows.values()))]
 
 
@@ -86,7 +87,7 @@ def _rates(
     electrical = scheme.plant.electrical
     if run is None:
         yield "outage", -of_water * full.turbined
-        yield "imports", np.full(full.turbined.size, -electrical.imported)
+        yield IMPORTS, np.full(full.turbined.size, -electrical.imported)
         return
     yield "outage", -of_water * (full.turbined - run.turbined)
     yield "levels", weight * run.turbined * run.gross_head - of_water * run.turbined
@@ -99,7 +100,7 @@ def _rates(
     own_use = np.minimum(exported, electrical.own_use * runs)
     yield "own_use", -own_use
     yield "export_limit", np.where(runs, scheme.net_power(run.output) - (exported - own_use), 0.0)
-    yield "imports", np.where(runs, 0.0, -electrical.imported)
+    yield IMPORTS, np.where(runs, 0.0, -electrical.imported)
 
 
 def _unused_water(run: Operation) -> Iterator[tuple[str, Floats]]:
