@@ -15,6 +15,7 @@ from hydroyield.evidence.outages import outage_checks
 from hydroyield.evidence.waterway import waterway_checks
 from hydroyield.hydraulics import Weir
 from hydroyield.hydraulics.levels import range_covered
+from hydroyield.hydraulics.rating_fit import FittedRating
 from hydroyield.record import Record
 from hydroyield.river.presets import PRESETS
 from hydroyield.site.assembly import Assembled
@@ -24,6 +25,7 @@ from hydroyield.site.river_assembly import river_checks
 
 FEWEST_YEARS = 10  # common practice: fewer years do not show the spread of wet and dry
 USUAL_CAPACITY_FACTOR = (0.2, 0.85)  # run-of-river plants, common practice
+LARGEST_RATING_ERROR = 0.1  # of the discharge (common practice)
 LARGEST_SHARE_OUTSIDE = 0.02  # of the days beyond a surveyed level
 
 
@@ -80,8 +82,8 @@ def _years(estimate: Estimate) -> Check:
 def _levels(estimate: Estimate) -> Iterator[Check]:
     scheme, cells, run = estimate.scheme, estimate.cells, estimate.operation
     rules = scheme.rules
-    below = scheme.heads.below(cells.discharge, rules.unreturned[cells.season])
-    followed = run.turbined if scheme.heads.follows_turbine else below
+    in_river = scheme.heads.below(cells.discharge, rules.unreturned[cells.season])
+    followed = run.turbined if scheme.heads.follows_turbine else in_river
     for side, level, seen in (
         ("headwater", scheme.heads.headwater, cells.discharge),
         ("tailwater", scheme.heads.tailwater, followed),
@@ -102,7 +104,11 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
             f"and {share:.1%} of the time lies outside, where the first level is held and the "
             "last segment extended. Survey levels at more discharges.",
         )
-    if isinstance(scheme.heads.headwater, Weir):
+    below = {"tailwater": scheme.heads.tailwater, "river": scheme.heads.river_level}
+    for side, found in below.items():
+        if isinstance(found, FittedRating):
+            yield _fit(side, found)
+    if isinstance(scheme.heads.headwater, Weir) and not scheme.heads.headwater.drowned:
         yield Check(
             "headwater_weir", "pass", None, None,
             "The headwater follows the discharge over a free weir, approach velocity neglected.",
@@ -117,6 +123,27 @@ def _presets(site: SiteDescription) -> Iterator[Check]:
                 f"The rule {rule.name} is an example ({PRESETS[rule.name].source}), not the law of "
                 "the day and not a permit; ask the authority.",
             )  # fmt: skip
+
+
+def _fit(side: str, found: FittedRating) -> Check:
+    """How well a fitted rating holds its gaugings."""
+    rating, error = found.rating, found.standard_error
+    words = (
+        f"The {side} rating fitted to {found.count} gaugings is Q = {rating.coefficient:.4g} "
+        f"(h - {rating.zero_level:.3f})^{rating.exponent:.3g}"
+    )
+    if error is None:
+        bad = f"{words}; three gaugings fix it without showing an error. Survey more."
+        return Check("rating_fit", "warn", None, LARGEST_RATING_ERROR, bad)
+    words += f", standard error {100 * error:.1f} % of the discharge"
+    return warn_unless(
+        "rating_fit",
+        error <= LARGEST_RATING_ERROR,
+        error,
+        LARGEST_RATING_ERROR,
+        f"{words}.",
+        f"{words}; look at the gaugings one by one, or survey more.",
+    )
 
 
 _EFFECT_OF_LEAVING_OUT = {

@@ -28,6 +28,9 @@ class Heads:
     tailwater : level against the discharge that it follows
     follows_turbine : the tailwater follows the turbine discharge (a separate tailrace) and not
         the river
+    river_level : level of the river where a tailrace joins it, against river discharge; None where
+        it does not matter. The tailwater is never below it
+    lowest_tailwater : level that backwater from downstream holds [m]
     waterway : losses that the discharge of the whole plant meets
     rack_of_season : (s,) coefficient of the trash racks [m per (m3/s)^2]; empty without them
     inflow_below_intake : water that joins between intake and tailwater, as a share of the river
@@ -37,6 +40,8 @@ class Heads:
     headwater: Level
     tailwater: Level
     follows_turbine: bool = False
+    river_level: Level | None = None
+    lowest_tailwater: float = -np.inf
     waterway: Waterway = FREE
     rack_of_season: tuple[float, ...] = ()
     inflow_below_intake: float = 0.0
@@ -66,14 +71,18 @@ class Heads:
         racks = np.asarray(self.rack_of_season)
         seasons = np.zeros(discharge.size, dtype=np.int64) if season is None else season
         over_weir = isinstance(self.headwater, Weir)
+        below = self.below(discharge, unreturned)
+        floor = np.full(discharge.size, self.lowest_tailwater)
+        if self.river_level is not None:
+            floor = np.maximum(floor, self.river_level(below))
+        fixed = None if self.follows_turbine else np.maximum(floor, self.tailwater(below))
         return HeadState(
             self,
             after_abstraction=discharge - abstracted if over_weir else None,
             fixed_headwater=None if over_weir else self.headwater(discharge),
-            fixed_tailwater=None
-            if self.follows_turbine
-            else self.tailwater(self.below(discharge, unreturned)),
+            fixed_tailwater=fixed,
             rack=racks[seasons] if racks.size else None,
+            tailwater_floor=floor,
         )
 
 
@@ -89,6 +98,7 @@ class HeadState:
     fixed_headwater: Floats | None
     fixed_tailwater: Floats | None
     rack: Floats | None = None
+    tailwater_floor: Floats | None = None
 
     def __getitem__(self, chosen: NDArray[np.intp] | NDArray[np.bool_]) -> HeadState:
         """The chosen states only."""
@@ -102,6 +112,7 @@ class HeadState:
             part(self.fixed_headwater),
             part(self.fixed_tailwater),
             part(self.rack),
+            part(self.tailwater_floor),
         )
 
     @property
@@ -121,13 +132,18 @@ class HeadState:
         if self.fixed_headwater is not None:
             return self.fixed_headwater
         assert self.after_abstraction is not None  # one of the two is always there
-        return self.heads.headwater(self.after_abstraction - turbined)
+        over = self.after_abstraction - turbined
+        weir = self.heads.headwater
+        if isinstance(weir, Weir) and weir.drowned:
+            return weir.drowned_level(over, self.tailwater(turbined))
+        return weir(over)
 
     def tailwater(self, turbined: Floats) -> Floats:
         """Tailwater level [m]."""
         if self.fixed_tailwater is not None:
             return self.fixed_tailwater
-        return self.heads.tailwater(turbined)
+        level = self.heads.tailwater(turbined)
+        return level if self.tailwater_floor is None else np.maximum(level, self.tailwater_floor)
 
     def gross(self, turbined: Floats, axis_level: float | None = None) -> Floats:
         """Gross head [m], never below 0: down to the tailwater, or to `axis_level` [m]."""

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
+DROWNED_STEPS = 40  # halvings, finer than any level is surveyed
+
 
 class Level(Protocol):
     """Water level as a function of discharge."""
@@ -77,11 +79,33 @@ class Weir:
     length : L [m]
     coefficient : C [m^0.5/s]; 1.84 for a sharp crest, 3.33 in feet (USBR Water Measurement
         Manual, ch. 7, from memory)
+    drowned : whether a tailwater above the crest holds the headwater up
     """
 
     crest: float
     length: float
     coefficient: float
+    drowned: bool = False
+
+    def drowned_level(self, discharge: Floats, downstream: Floats) -> Floats:
+        """Headwater level [m] over the weir, both (n,).
+
+        discharge : over the weir [m3/s]
+        downstream : level below it [m]
+
+        Q = C L h1^1.5 (1 - (h2 / h1)^1.5)^0.385 (Villemonte 1947, Eng. News-Rec. 139: 866-869),
+        solved by bisection between the free level and that raised by the tailwater.
+        """
+        free = self(discharge) - self.crest
+        behind = np.maximum(0.0, downstream - self.crest)
+        low, high = np.maximum(free, behind), free + behind
+        unit = np.maximum(0.0, discharge) / (self.coefficient * self.length)
+        for _ in range(DROWNED_STEPS):
+            middle = 0.5 * (low + high)
+            ratio = behind / np.maximum(middle, 1e-12)
+            passed = middle**1.5 * np.maximum(0.0, 1 - ratio**1.5) ** 0.385
+            low, high = np.where(passed < unit, middle, low), np.where(passed < unit, high, middle)
+        return np.asarray(self.crest + high)
 
     def __call__(self, discharge: Floats) -> Floats:
         unit_discharge = np.maximum(0.0, discharge) / (self.coefficient * self.length)
@@ -148,4 +172,5 @@ def range_covered(level: object) -> tuple[float, float] | None:
     """Smallest and largest discharge [m3/s] that a surveyed level covers; None for a formula."""
     if isinstance(level, LevelTable):
         return level.discharges[0], level.discharges[-1]
-    return None
+    found = getattr(level, "discharges", None)  # of a fitted rating
+    return found if isinstance(found, tuple) else None

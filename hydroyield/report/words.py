@@ -10,6 +10,7 @@ from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.years import MONTH_NAMES, span
 from hydroyield.site.discharge_models import Transfer
+from hydroyield.site.head_models import RiverLevel
 from hydroyield.site.models import SiteFile
 from hydroyield.site.waterway_models import WaterwayLoss
 
@@ -167,19 +168,28 @@ def headwater(model: SiteFile) -> str:
 def tailwater(model: SiteFile) -> str:
     """The tailwater in one phrase."""
     form = model.head.tailwater
-    follows = "the river" if form.follows == "river" else "the turbine discharge"
+    words = _level(form)
+    if form.level is None:
+        words += {"river": ", following the river", "turbine": ", following the turbine discharge",
+                  "higher": ", following the turbine discharge"}[form.follows]  # fmt: skip
+    if form.river is not None:
+        words += f"; never below the river ({_level(form.river)})"
+    if form.not_below is not None:
+        words += f"; never below {form.not_below:.2f} m"
+    return words
+
+
+def _level(form: RiverLevel) -> str:
     if form.rating is not None:
         rating = form.rating
-        text = (
-            f"rating Q = {rating.coefficient:g} (h - {rating.zero_level:g})^{rating.exponent:g}, "
-        )
-    elif form.channel is not None:
-        text = f"uniform flow in a channel, Manning n {form.channel.manning_n:g}, "
-    elif form.table is not None:
-        text = f"table of {len(form.table)} levels, "
-    else:
-        return f"{form.level:.2f} m"
-    return text + f"following {follows}"
+        return f"rating Q = {rating.coefficient:g} (h - {rating.zero_level:g})^{rating.exponent:g}"
+    if form.channel is not None:
+        return f"uniform flow in a channel, Manning n {form.channel.manning_n:g}"
+    if form.gaugings is not None:
+        return f"rating fitted to {len(form.gaugings)} gaugings"
+    if form.table is not None:
+        return f"table of {len(form.table)} levels"
+    return f"{form.level:.2f} m"
 
 
 def waterway(model: SiteFile) -> str:

@@ -29,12 +29,13 @@ from hydroyield.hydraulics import (
 )
 from hydroyield.hydraulics.levels import Level
 from hydroyield.hydraulics.losses import racks_of_seasons
+from hydroyield.hydraulics.rating_fit import fit_rating
 from hydroyield.hydraulics.water import STANDARD_DENSITY
 from hydroyield.powerhouse import EfficiencyCurve, Electrical, LoadCurve, Plant, machine_types
 from hydroyield.river import Abstraction, InflowShare, InflowSteps, WaterRules, quantile
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.reserve import ALL_YEAR, InflowRule
-from hydroyield.site.head_models import Head, Headwater, Tailwater
+from hydroyield.site.head_models import Head, Headwater, RiverLevel
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.outage_assembly import outages_of
 from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
@@ -193,7 +194,9 @@ def levels(
     return Heads(
         headwater=_headwater(head.headwater),
         tailwater=_tailwater(head.tailwater),
-        follows_turbine=head.tailwater.follows == "turbine",
+        follows_turbine=head.tailwater.follows != "river",
+        river_level=None if head.tailwater.river is None else _tailwater(head.tailwater.river),
+        lowest_tailwater=-np.inf if head.tailwater.not_below is None else head.tailwater.not_below,
         waterway=way,
         rack_of_season=racks,
         inflow_below_intake=inflow,
@@ -207,14 +210,17 @@ def _table(pairs: tuple[tuple[float, float], ...]) -> LevelTable:
 
 def _headwater(form: Headwater) -> Level:
     if form.weir is not None:
-        return Weir(form.weir.crest, form.weir.length, form.weir.coefficient)
+        weir = form.weir
+        return Weir(weir.crest, weir.length, weir.coefficient, weir.drowned)
     if form.table is not None:
         return _table(form.table)
     assert form.level is not None  # exactly one of them is given
     return FixedLevel(form.level)
 
 
-def _tailwater(form: Tailwater) -> Level:
+def _tailwater(form: RiverLevel) -> Level:
+    if form.gaugings is not None:
+        return fit_rating(form.gaugings)
     if form.rating is not None:
         return StageDischarge(form.rating.zero_level, form.rating.coefficient, form.rating.exponent)
     if form.channel is not None:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
+from collections.abc import Set as AbstractSet
 from typing import Annotated, Any, ClassVar, Literal, get_args
 
 from pydantic import Field
@@ -10,10 +11,10 @@ from pydantic import Field
 from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, SHARE
 from hydroyield.site.blocks import Block
 from hydroyield.site.faults import Finding
-from hydroyield.site.fields import Choice, Quantity
+from hydroyield.site.fields import Choice, Quantity, Switch
 from hydroyield.site.tables import Pairs, Table
 
-Follows = Literal["river", "turbine"]
+Follows = Literal["river", "turbine", "higher"]
 
 Level = Annotated[float, Quantity(LENGTH)]
 PositiveLength = Annotated[float, Quantity(LENGTH, above=0)]
@@ -30,6 +31,24 @@ def _falling(table: Table) -> Iterable[Finding]:
 
 
 _COLUMNS = ("discharge", "level")
+
+
+def _enough(table: Table) -> Iterable[Finding]:
+    if len(table) < 3:
+        yield (), "a rating is fitted to three gaugings or more; write more, or a table"
+    yield from _falling(table)
+
+
+Gaugings = Annotated[
+    Table,
+    Pairs(
+        Quantity(DISCHARGE, above=0),
+        Quantity(LENGTH),
+        _COLUMNS,
+        "[[2 m3/s, 98.0 m], [8 m3/s, 98.4 m], [20 m3/s, 98.9 m]]",
+        also=_enough,
+    ),
+]
 HeadwaterTable = Annotated[
     Table,
     Pairs(
@@ -60,6 +79,12 @@ class Weir(Block):
     length: PositiveLength = Field(description="Length of the crest [m].", examples=["22 m"])
     coefficient: Annotated[float, Quantity(NUMBER, above=0, example="1.8")] = Field(
         description="Discharge coefficient, in metric units [m^0.5/s].", examples=[1.8]
+    )
+    drowned: Switch = Field(
+        default=False,
+        description="Whether a tailwater above the crest holds the headwater up (Villemonte): true "
+        "or false; false if left out.",
+        examples=[True],
     )
 
 
@@ -138,19 +163,21 @@ class Headwater(Block):
     )
 
 
-class Tailwater(Block):
-    """The level below the turbines: exactly one of level, table, rating and channel."""
+class RiverLevel(Block):
+    """A level against discharge: exactly one of level, table, rating, channel and gaugings."""
 
     example: ClassVar[dict[str, Any]] = {"level": "97.9 m"}
-    exactly_one_of: ClassVar[tuple[str, ...]] = ("level", "table", "rating", "channel")
+    exactly_one_of: ClassVar[tuple[str, ...]] = (
+        "level", "table", "rating", "channel", "gaugings",
+    )  # fmt: skip
 
     level: Level | None = Field(
-        default=None, description="Constant tailwater level [m].", examples=["97.9 m"]
+        default=None, description="Constant level [m].", examples=["97.9 m"]
     )
     table: TailwaterTable | None = Field(
         default=None,
-        description="Pairs of discharge [m3/s] and tailwater level [m], not falling, linear "
-        "between them; the last segment is extended.",
+        description="Pairs of discharge [m3/s] and level [m], not falling, linear between them; "
+        "the last segment is extended.",
         examples=[[["0 m3/s", "97.9 m"], ["20 m3/s", "98.35 m"]]],
     )
     rating: Rating | None = Field(
@@ -159,12 +186,46 @@ class Tailwater(Block):
     channel: Channel | None = Field(
         default=None, description="A channel in uniform flow.", examples=[Channel.example]
     )
+    gaugings: Gaugings | None = Field(
+        default=None,
+        description="Surveyed pairs of discharge [m3/s] and level [m], three or more, to which "
+        "Q = C (h - a)^b is fitted.",
+        examples=[[["2 m3/s", "98.0 m"], ["8 m3/s", "98.4 m"], ["20 m3/s", "98.9 m"]]],
+    )
+
+
+class Tailwater(RiverLevel):
+    """The level below the turbines: exactly one of level, table, rating, channel and gaugings."""
+
     follows: Annotated[Follows, Choice(get_args(Follows))] = Field(
         default="river",
-        description="The discharge that sets the level: river, or turbine for a separate "
-        "tailrace; river if left out.",
+        description="The discharge that sets the level: river, turbine for a separate tailrace, or "
+        "higher for a tailrace that the river can drown; river if left out.",
         examples=["river"],
     )
+    river: RiverLevel | None = Field(
+        default=None,
+        description="With follows: higher, the level of the river where the tailrace joins it; not "
+        "needed if left out.",
+        examples=[RiverLevel.example],
+    )
+    not_below: Level | None = Field(
+        default=None,
+        description="Level that backwater from downstream holds, such as of a pond [m]; none if "
+        "left out.",
+        examples=["97.5 m"],
+    )
+
+    @classmethod
+    def keys_fit_together(
+        cls, named: AbstractSet[str], written: Mapping[str, Any]
+    ) -> Iterable[Finding]:
+        """A drowned tailrace needs the river that drowns it."""
+        higher = written.get("follows") == "higher"
+        if higher and "river" not in named:
+            yield ("river",), "is missing; write river: {table: [[0 m3/s, 97.9 m], ...]}"
+        if "river" in named and not higher:
+            yield ("river",), "is read with follows: higher; write that, or take river out"
 
 
 class Head(Block):
