@@ -11,6 +11,7 @@ import pytest
 
 import hydroyield
 import hydroyield.errors
+from hydroyield.energy import standing
 from hydroyield.jobs import SiteEstimate
 
 DAYS = 1461  # four hydrological years from October 2000
@@ -310,3 +311,39 @@ def test_a_plant_out_of_service_imports_too(tmp_path: Path) -> None:
     closed = estimate(tmp_path, electrical=stated, operation="{closed: jul}")
     assert closed.monthly_energy_mwh[6] == pytest.approx(-2 * 24 * 31 / 1000)
     assert ledger(closed)["imports"] < ledger(always)["imports"]
+
+
+# --- hours ----------------------------------------------------------------------------------------
+
+
+def test_hours_of_standing_by_cause_counted_day_by_day(tmp_path: Path) -> None:
+    head = "{headwater: {level: 30}, tailwater: {table: [[0, 10], [5, 11], [9, 29.5]]}, "
+    head += "minimum_net_head: 15 m}"
+    found = estimate(tmp_path, head=head, operation="{shutdown_above: 6, forced_outage_rate: 5 %}")
+    tail = np.interp(RIVER, [0, 5, 9], [10, 11, 29.5])
+    net = 30 - tail
+    stopped = RIVER > 6
+    low = ~stopped & (net < 15)
+    full = 3 * np.sqrt(np.maximum(net, 0) / 20)
+    runs = ~stopped & ~low & (0.2 * full <= RIVER)
+    per_year = 24 / 4
+    hours = standing.hours_by_cause(found)
+    counted = {cause: float(h.sum()) / 4 for cause, h in hours.items()}
+    assert counted["shutdown"] == pytest.approx(stopped.sum() * per_year)
+    assert counted["low_head"] == pytest.approx(low.sum() * per_year)
+    assert counted["running"] == pytest.approx(0.95 * runs.sum() * per_year)
+    assert counted["outage"] == pytest.approx(0.05 * runs.sum() * per_year)
+    dry = ~stopped & ~low & ~runs
+    assert counted["too_little_water"] == pytest.approx(dry.sum() * per_year)
+    assert sum(counted.values()) == pytest.approx(24 * DAYS / 4)
+    table = standing.standing_table(found)
+    assert len(table) == 48
+    assert table["shutdown_hours"].sum() == pytest.approx(stopped.sum() * 24)
+
+
+def test_hours_of_each_unit(tmp_path: Path) -> None:
+    found = estimate(tmp_path, turbines=TWO)
+    first, second = standing.unit_hours(found)
+    runs = (RIVER >= 0.2 * 2).sum() * 24 / 4
+    assert first == pytest.approx(runs)
+    assert 0 < second < first

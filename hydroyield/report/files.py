@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from hydroyield.energy.standing import standing_table
 from hydroyield.jobs import GaugeRecord, SiteEstimate
 from hydroyield.report.progress import Steps
 from hydroyield.report.record_result import gauge_result
@@ -20,6 +21,7 @@ if TYPE_CHECKING:
     from hydroyield.report.figures.facts import Facts
 
 RESULT, CURVES, POWER_DURATION = "result.json", "curves.csv", "power_duration.csv"
+STANDING = "standing.csv"
 PAGE, FIGURES_FOLDER = "report.html", "figures"
 
 
@@ -37,6 +39,8 @@ def write_tables(estimate: SiteEstimate, folder: Path) -> None:
     (folder / RESULT).write_text(result_text(estimate), "utf-8")
     if estimate.views is not None:
         write_river_tables(estimate.views, folder)
+        standing = standing_table(estimate)
+        standing.to_csv(folder / STANDING, index=False, float_format="%.7g")
     # seven digits are more than any input has; the file stays readable
     estimate.curves().to_csv(folder / CURVES, index=False, float_format="%.7g")
     estimate.power_duration().to_csv(folder / POWER_DURATION, index=False, float_format="%.10g")

@@ -10,6 +10,7 @@ from collections.abc import Sequence
 from typing import Any
 
 import hydroyield
+from hydroyield.energy.standing import hours_by_cause
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.report import words
@@ -96,6 +97,7 @@ def page_data(estimate: SiteEstimate, figures: Sequence[DrawnFigure]) -> dict[st
         "other_readings": _other_readings(estimate),
         "river": _river(estimate),
         "ledger": _ledger(estimate),
+        "hours": _hours(estimate),
         "reference_head": words.head(estimate.reference_head_m),
         "methods": METHODS,
         "caution": CAUTION,
@@ -262,6 +264,22 @@ def _river(estimate: SiteEstimate) -> dict[str, Any]:
             (days, rounded(q)) for days, q in estimate.characteristic_discharge_m3s.items()
         ],
     }
+
+
+def _hours(estimate: SiteEstimate) -> Rows:
+    names = {
+        "running": "running",
+        "too_little_water": "standing: too little water",
+        "shutdown": "standing: shut down in high water",
+        "low_head": "standing: too little head",
+        "outage": "standing: units out of service",
+    }
+    hours = {cause: float(h.sum(axis=1).mean()) for cause, h in hours_by_cause(estimate).items()}
+    total = sum(hours.values())
+    return [
+        (names[cause], rounded(value) if value else "0", f"{100 * value / total:.1f} %")
+        for cause, value in hours.items()
+    ]
 
 
 def _ledger(estimate: SiteEstimate) -> Rows:

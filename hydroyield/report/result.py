@@ -6,6 +6,7 @@ from dataclasses import asdict
 from typing import Any
 
 import hydroyield
+from hydroyield.energy.standing import hours_by_cause, unit_hours
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW
 from hydroyield.report.record_result import (
@@ -41,6 +42,8 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
         "characteristic_discharge_m3s": estimate.characteristic_discharge_m3s,
         "environmental_flow_mean_m3s": estimate.environmental_flow_mean_m3s,
         "days_at_residual_flow": estimate.days_at_residual_flow,
+        "mean_hours_a_year": _hours(estimate),
+        "unit_running_hours": unit_hours(estimate),
         "environmental_flow_costs": _rule_costs(estimate),
         "turbines": _turbines(estimate),
         "density_kg_m3": estimate.scheme.plant.density,
@@ -129,6 +132,12 @@ def _transfer(estimate: SiteEstimate) -> dict[str, Any]:
             "zero": list(fit.zero),
         }
     return facts
+
+
+def _hours(estimate: SiteEstimate) -> dict[str, float]:
+    """Hours a year that the plant runs and stands, by cause."""
+    hours = hours_by_cause(estimate)
+    return {f"{cause}_hours": float(h.sum(axis=1).mean()) for cause, h in hours.items()}
 
 
 def _rule_costs(estimate: SiteEstimate) -> list[dict[str, Any]]:
