@@ -220,6 +220,21 @@ def new(
 
 
 @app.command()
+def machines(site: SiteArgument, as_json: JsonOption = False) -> None:
+    """List the types of turbine that suit the site, with the reason for each that does not."""
+    from hydroyield import jobs
+    from hydroyield.report.machines import machines_facts, print_machines
+    from hydroyield.site.assembly import read_site
+
+    found = jobs.machines(read_site(site))
+    if as_json:
+        facts = machines_facts(found)
+        sys.stdout.write(json.dumps(facts, indent=2, allow_nan=False, ensure_ascii=False) + "\n")
+    else:
+        print_machines(found)
+
+
+@app.command()
 def schema() -> None:
     """Print the JSON Schema of the site file, with which editors complete and underline."""
     from hydroyield.site.schema import schema_text

@@ -15,6 +15,7 @@ from hydroyield.evidence import audit
 from hydroyield.evidence.doubts import Rerun, doubts_of, rerun, suspects_of, year_doubts
 from hydroyield.evidence.outages import with_placed_outage
 from hydroyield.evidence.rule_costs import rule_costs
+from hydroyield.evidence.suitable import Suitability, suitable_machines
 from hydroyield.record import Receipt, Record, read_record
 from hydroyield.record.joining import read_records
 from hydroyield.record.options import RecordOptions
@@ -163,6 +164,14 @@ def _no_usable_year(site: SiteDescription, error: NoUsableYearError, record: Rec
         f"month ({lacking}{rest}); use a longer record, or another year_start_month or a lower "
         "minimum_month_coverage under discharge",
     )
+
+
+def machines(site: SiteDescription) -> list[Suitability]:
+    """Which types of machine suit a site, and why the others do not.
+
+    Raises SiteFileError or RecordError with every fault found.
+    """
+    return suitable_machines(estimate(site))
 
 
 # --- a record alone -------------------------------------------------------------------------------

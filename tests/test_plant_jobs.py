@@ -2,16 +2,20 @@
 
 from __future__ import annotations
 
+import json
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 import pandas as pd
 import pytest
+from typer.testing import CliRunner
 
 import hydroyield
 import hydroyield.errors
+from hydroyield.cli import app
 from hydroyield.energy import standing
+from hydroyield.evidence.suitable import suitable_machines
 from hydroyield.jobs import SiteEstimate
 
 DAYS = 1461  # four hydrological years from October 2000
@@ -347,3 +351,35 @@ def test_hours_of_each_unit(tmp_path: Path) -> None:
     runs = (RIVER >= 0.2 * 2).sum() * 24 / 4
     assert first == pytest.approx(runs)
     assert 0 < second < first
+
+
+# --- types of machine -----------------------------------------------------------------------------
+
+
+def test_types_that_suit_a_head_and_why_others_do_not(tmp_path: Path) -> None:
+    head = "{headwater: {level: 40}, tailwater: {level: 10}}"
+    units = f"\n  {UNIT.replace('rated_head: 20', 'rated_head: 30')}}}"
+    found = estimate(tmp_path, head=head, turbines=units)
+    fits = {fit.type: fit for fit in suitable_machines(found)}
+    assert {name for name, fit in fits.items() if fit.suits} == {
+        "kaplan", "semi_kaplan", "propeller", "francis", "pelton", "crossflow",
+    }  # fmt: skip
+    assert "outside its 50 to 250 m" in fits["turgo"].reason
+    assert "outside its 1 to 10 m" in fits["screw"].reason
+    offered = RIVER
+    assert fits["francis"].running_share == pytest.approx((offered >= 0.4 * 3).mean(), abs=2e-3)
+    francis = "[[.2,.45],[.3,.62],[.4,.73],[.5,.80],[.6,.86],[.7,.90],[.8,.92],[.9,.92],[1,.9]]"
+    as_francis = units.replace(CURVE, francis).replace("20 %", "40 %")
+    same = estimate(tmp_path, head=head, turbines=as_francis)
+    assert fits["francis"].energy_mwh == pytest.approx(same.mean_annual_energy_mwh, rel=1e-9)
+
+
+def test_the_machines_command(tmp_path: Path) -> None:
+    estimate(tmp_path)
+    said = CliRunner().invoke(app, ["machines", str(tmp_path / "site.yaml")])
+    assert said.exit_code == 0, said.output
+    assert "crossflow" in said.output
+    said = CliRunner().invoke(app, ["machines", str(tmp_path / "site.yaml"), "--json"])
+    found = json.loads(said.stdout)["machines"]
+    assert len(found) == 8
+    assert [fit["suits"] for fit in found] == sorted((fit["suits"] for fit in found), reverse=True)

@@ -53,7 +53,7 @@ def part_of_the_demo(folder: Path) -> Path:
     return path
 
 
-FAST = ("several_flow_rules", "one_kaplan")
+FAST = ("one_kaplan",)
 SITES = [
     pytest.param(make, id=name, marks=() if name in FAST else pytest.mark.slow)
     for name, make in twin_sites.SITES.items()
