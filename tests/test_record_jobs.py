@@ -18,9 +18,7 @@ import hydroyield
 from hydroyield.cli import app
 from hydroyield.errors import RecordError, SiteFileError
 from hydroyield.jobs import SiteEstimate
-from hydroyield.record import Record, read_record
 
-FLAT_BROOK = Path(__file__).parent / "data" / "flat_brook_daily.csv"
 PLANT = """
 head: {headwater: {level: 20}, tailwater: {level: 10}}
 turbines:
@@ -396,39 +394,10 @@ def test_options_that_cannot_be_read_are_refused(tmp_path: Path) -> None:
     assert run("record", tmp_path / "q.csv", "--gauge-area", "40 km2").exit_code == 0
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("days", [1, 400])
 def test_a_short_record_has_a_page_too(tmp_path: Path, days: int) -> None:
     write(tmp_path, "q.csv", river(days))
     said = run("record", tmp_path / "q.csv", "--out", tmp_path / "out", "--quiet")
     assert said.exit_code == 0, said.output
     assert (tmp_path / "out" / "report.html").exists()
-
-
-# --- a real record in two units -------------------------------------------------------------------
-
-
-def test_flat_brook_in_cfs_and_in_cubic_metres(tmp_path: Path) -> None:
-    """USGS 01440000 (public domain), kept in cfs as it was published: an RDB file in cfs and a
-    plain file in m3/s (1 ft = 0.3048 m) hold the same record."""
-    plain = read_record(FLAT_BROOK)
-    cubic_feet = plain.discharge / 0.3048**3
-    days = plain.dates.astype(str)
-    rows = "\n".join(
-        f"USGS\t01440000\t{day}\t{round(q, 6):g}\tA"
-        for day, q in zip(days, cubic_feet, strict=True)
-    )
-    head = (
-        "# retrieved for a test\nagency_cd\tsite_no\tdatetime\t98765_00060_00003\t"
-        "98765_00060_00003_cd\n5s\t15s\t20d\t14n\t10s\n"
-    )
-    (tmp_path / "flat.rdb").write_text(head + rows + "\n")
-    rdb = read_record(tmp_path / "flat.rdb")
-    assert rdb.receipt.file_format == "usgs-rdb"
-    assert (rdb.receipt.unit, rdb.receipt.days) == ("cfs", 29345)
-    np.testing.assert_allclose(rdb.discharge, plain.discharge, rtol=1e-9)
-    series = plain.series()
-    series.to_csv(tmp_path / "flat.csv", float_format="%.12g")
-    assert isinstance(Record.from_series(series), Record)
-    metric = read_record(tmp_path / "flat.csv")
-    assert metric.receipt.unit == "m3/s"
-    np.testing.assert_allclose(metric.discharge, rdb.discharge, rtol=1e-9)

@@ -44,8 +44,6 @@ def walk(estimate: SiteEstimate, power: PowerOfDay) -> dict[str, list[float]]:
 def estimates(tmp_path_factory: pytest.TempPathFactory) -> dict[str, SiteEstimate]:
     """Sites with gaps, whole years left out, rules by month, and calendar years."""
     makers = (
-        twin_sites.one_kaplan,
-        twin_sites.two_kaplans_rising_tailwater,
         twin_sites.weir_and_abstractions,
         twin_sites.several_flow_rules,
         twin_sites.calendar_years_and_transfer,

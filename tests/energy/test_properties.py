@@ -26,7 +26,7 @@ from hydroyield.river import Abstraction, InflowShare, WaterRules
 # less than 5e-5. Held here to the accuracy that is promised for annual energy.
 RESOLUTION = 1e-3
 
-few = settings(deadline=None, max_examples=8)
+few = settings(deadline=None, max_examples=5)
 
 
 def record(seed: int, mean: float, spread: float) -> np.ndarray:

@@ -290,7 +290,7 @@ values = st.one_of(st.just(-math.inf), st.floats(-5, 50))
     first=st.lists(values, min_size=2, max_size=12),
     second=st.lists(values, min_size=2, max_size=12),
 )
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=30, deadline=None)
 def test_max_plus_against_a_double_loop(rows: int, first: list[float], second: list[float]) -> None:
     width = len(first) // rows, len(second) // rows
     a = np.reshape(first[: rows * width[0]], (rows, -1))
