@@ -10,9 +10,10 @@ from pathlib import Path
 from hydroyield.checks import Check
 from hydroyield.energy import Estimate, estimate_energy
 from hydroyield.energy.estimate import NoUsableYearError
-from hydroyield.errors import Fault, RecordError
+from hydroyield.errors import Fault, RecordError, SiteFileError
 from hydroyield.evidence import audit
 from hydroyield.evidence.doubts import Rerun, doubts_of, rerun, suspects_of, year_doubts
+from hydroyield.evidence.gain import Gain, gain_check, gain_over_mean, gain_over_years
 from hydroyield.evidence.outages import with_placed_outage
 from hydroyield.evidence.rule_costs import rule_costs
 from hydroyield.evidence.suitable import Suitability, suitable_machines
@@ -20,7 +21,7 @@ from hydroyield.record import Receipt, Record, read_record
 from hydroyield.record.joining import read_records
 from hydroyield.record.options import RecordOptions
 from hydroyield.river.views import RiverViews
-from hydroyield.site.assembly import Assembled, assemble
+from hydroyield.site.assembly import Assembled, assemble, read_site
 from hydroyield.site.reading import SiteDescription
 from hydroyield.site.river_assembly import (
     RiverAtSite,
@@ -39,6 +40,7 @@ class SiteEstimate(Estimate):
     reference : the reference record; None without one
     river : how the record became the river at the site
     rule_costs : energy that each rule for the environmental flow costs, and all together [MWh]
+    gain : over the plant that runs there already; None without one
     reruns : the energy of other readings of the record, where there is a doubt about it
     checks : every check of the result
     """
@@ -48,6 +50,7 @@ class SiteEstimate(Estimate):
     reference: Record | None
     river: RiverAtSite
     rule_costs: tuple[float, ...]
+    gain: Gain | None
     reruns: tuple[Rerun, ...]
     checks: tuple[Check, ...]
 
@@ -98,6 +101,7 @@ def _concluded(
     area = None if transfer is None else transfer.gauge_area
     doubts = () if record is None else doubts_of(record, area, assembled, energy)
     reruns = rerun(site, doubts, reference, assembled, energy)
+    gain = _gain(site, energy)
     known = {field.name: getattr(energy, field.name) for field in fields(energy)}
     return SiteEstimate(
         **known,
@@ -106,9 +110,38 @@ def _concluded(
         reference=reference,
         river=assembled.river,
         rule_costs=rule_costs(site, energy),
+        gain=gain,
         reruns=reruns,
-        checks=audit(site, record, assembled, energy, doubts, reruns),
+        checks=(
+            *audit(site, record, assembled, energy, doubts, reruns),
+            *(() if gain is None else (gain_check(gain),)),
+        ),
     )
+
+
+def _gain(site: SiteDescription, energy: Estimate) -> Gain | None:
+    """The gain over the plant that runs there already, if one is stated."""
+    baseline = site.model.baseline
+    if baseline is None:
+        return None
+    if baseline.annual_energy is not None:
+        return gain_over_mean(energy, baseline.annual_energy)
+    if baseline.yearly_energy is not None:
+        years = {str(year): mwh for year, mwh in baseline.yearly_energy.items()}
+    else:
+        assert baseline.site is not None  # one of the three is given
+        old = read_site(site.folder / baseline.site)
+        if old.model.baseline is not None:
+            message = "the site file of the old plant has a baseline of its own; take it out there"
+            raise SiteFileError([site.fault(("baseline", "site"), message)])
+        found = estimate(old)
+        if not (found.has_years and energy.has_years):
+            return gain_over_mean(energy, found.mean_annual_energy_mwh)
+        years = found.yearly_energy_mwh
+    try:
+        return gain_over_years(energy, years)
+    except ValueError as error:
+        raise SiteFileError([site.fault(("baseline",), str(error))]) from None
 
 
 def _record(site: SiteDescription) -> Record | None:

@@ -383,3 +383,50 @@ def test_the_machines_command(tmp_path: Path) -> None:
     found = json.loads(said.stdout)["machines"]
     assert len(found) == 8
     assert [fit["suits"] for fit in found] == sorted((fit["suits"] for fit in found), reverse=True)
+
+
+# --- jets -----------------------------------------------------------------------------------------
+
+
+def test_jets_that_close_one_after_another_by_hand(tmp_path: Path) -> None:
+    """Of two jets one is closed where each would be less than half open, if that gives more."""
+    pelton = UNIT.replace("other", "pelton").replace("20 %", "5 %")
+    steady = np.full(DAYS, 1.2)  # 0.4 of full discharge: one jet at 0.8, or both at 0.4
+    two = estimate(tmp_path, steady, turbines=f"\n  {pelton}, jets: 2}}")
+    from scipy.interpolate import PchipInterpolator
+
+    jet = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])
+    best = max(float(jet(0.4)), float(jet(0.8)))
+    by_hand = WEIGHT * 1.2 * 20 * best * 24 * DAYS / 4e6
+    assert two.mean_annual_energy_mwh == pytest.approx(by_hand, rel=1e-6)
+    one = estimate(tmp_path, steady, turbines=f"\n  {pelton}}}")
+    assert two.mean_annual_energy_mwh >= one.mean_annual_energy_mwh
+    every = estimate(tmp_path, turbines=f"\n  {pelton}, jets: 3}}").mean_annual_energy_mwh
+    assert every > estimate(tmp_path, turbines=f"\n  {pelton}}}").mean_annual_energy_mwh
+
+
+# --- the gain over an old plant -------------------------------------------------------------------
+
+
+def test_the_gain_over_an_old_plant(tmp_path: Path) -> None:
+    old = estimate(tmp_path, turbines=f"\n  {UNIT.replace('_discharge: 3', '_discharge: 1.5')}}}")
+    (tmp_path / "site.yaml").rename(tmp_path / "old.yaml")
+    new = estimate(tmp_path, baseline="{site: old.yaml}")
+    assert new.gain is not None
+    assert new.gain.years == ("2001", "2002", "2003", "2004")
+    more = new.mean_annual_energy_mwh - old.mean_annual_energy_mwh
+    assert new.gain.gain_mwh == pytest.approx(more)
+    paired = estimate(tmp_path, baseline="{yearly_energy: {2002: 900, 2003: 700, 1999: 1}}")
+    assert paired.gain is not None
+    assert (paired.gain.baseline_mwh, paired.gain.years) == (800.0, ("2002", "2003"))
+    both = [paired.yearly_energy_mwh[year] for year in ("2002", "2003")]
+    assert paired.gain.energy_mwh == pytest.approx(sum(both) / 2)
+    mean = estimate(tmp_path, baseline="{annual_energy: 640}")
+    assert check(mean, "baseline_years").outcome == "warn"
+    said = CliRunner().invoke(app, ["estimate", str(tmp_path / "site.yaml"), "--json"])
+    assert json.loads(said.stdout)["gain"]["baseline_mwh"] == 640
+
+
+def test_a_baseline_without_a_year_in_common_is_a_fault(tmp_path: Path) -> None:
+    with pytest.raises(hydroyield.errors.SiteFileError, match="baseline: none of its years"):
+        estimate(tmp_path, baseline="{yearly_energy: {1990: 640}}")

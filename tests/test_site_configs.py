@@ -18,6 +18,7 @@ from pydantic import BaseModel
 import hydroyield
 from hydroyield.jobs import SiteEstimate
 from hydroyield.site import read_site_file, read_site_text
+from hydroyield.site.baseline_models import Baseline
 from hydroyield.site.discharge_models import Discharge, InflowBelowIntake, Transfer
 from hydroyield.site.head_models import Channel, Head, Headwater, Rating, Tailwater, Weir
 from hydroyield.site.models import Site, SiteFile
@@ -31,8 +32,8 @@ FOLDER = ROOT / "site_configs"
 FILES = sorted(FOLDER.glob("*.yaml"))
 KEY = re.compile(r"(?P<indent> *)(?P<off>#?)(?P<entry>- )?(?P<key>[a-z_]+):")
 MODELS: tuple[type[BaseModel], ...] = (
-    SiteFile, Site, Discharge, Record, Reference, Transfer, InflowBelowIntake, Abstraction, Head,
-    Headwater, Weir, Tailwater, Rating, Channel,
+    SiteFile, Site, Baseline, Discharge, Record, Reference, Transfer, InflowBelowIntake,
+    Abstraction, Head, Headwater, Weir, Tailwater, Rating, Channel,
     TurbineGroup, Electrical, Operation, WaterwayLoss, Pipe, TrashRack, Canal, Exit,
     *RULES.values(),
 )  # fmt: skip

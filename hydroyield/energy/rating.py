@@ -16,7 +16,7 @@ from hydroyield.errors import ComputationError
 from hydroyield.hydraulics import Heads
 from hydroyield.hydraulics.heads import FREE
 from hydroyield.hydraulics.losses import Waterway
-from hydroyield.powerhouse import EfficiencyCurve, UnitGroup
+from hydroyield.powerhouse import EfficiencyCurve, JetCurve, UnitGroup
 from hydroyield.river import WaterRules
 
 Floats = NDArray[np.float64]
@@ -48,7 +48,7 @@ class UnitSpecification:
     rated_head: float | None
     unit_capacity: float | None
     minimum_share: float
-    curve: EfficiencyCurve
+    curve: EfficiencyCurve | JetCurve
     axis_level: float | None = None
     branch: Waterway = FREE
 

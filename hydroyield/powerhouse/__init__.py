@@ -8,6 +8,7 @@ from hydroyield.powerhouse.types import MachineType, machine_types
 from hydroyield.powerhouse.units import (
     EfficiencyCurve,
     Electrical,
+    JetCurve,
     LoadCurve,
     Plant,
     UnitGroup,
@@ -18,6 +19,7 @@ __all__ = [
     "EfficiencyCurve",
     "Electrical",
     "HeadLines",
+    "JetCurve",
     "LoadCurve",
     "MachineType",
     "Operation",

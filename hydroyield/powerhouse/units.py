@@ -64,7 +64,7 @@ class BranchCurve:
     share lost at full opening is the same at every head.
     """
 
-    curve: EfficiencyCurve
+    curve: EfficiencyCurve | JetCurve
     lost: float
 
     def __call__(self, relative: Floats) -> Floats:
@@ -75,6 +75,32 @@ class BranchCurve:
     @property
     def best(self) -> float:
         """Best efficiency of the turbine itself."""
+        return self.curve.best
+
+
+@dataclass(frozen=True)
+class JetCurve:
+    """Efficiency of an impulse turbine that closes jets one after another at part load.
+
+    curve : with all jets open, which is that of each jet
+    jets : number of jets
+
+    With k of n jets open each takes n / k of the share; as many are open as give the most.
+    """
+
+    curve: EfficiencyCurve
+    jets: int
+
+    def __call__(self, share: Floats) -> Floats:
+        found = self.curve(share)
+        for opened in range(1, self.jets):
+            of_jet = share * self.jets / opened
+            fewer = self.curve(np.minimum(of_jet, 1.0))
+            found = np.where(of_jet <= 1 + 1e-9, np.maximum(found, fewer), found)
+        return np.asarray(found)
+
+    @property
+    def best(self) -> float:
         return self.curve.best
 
 
@@ -105,7 +131,7 @@ class UnitGroup:
     rated_head: float
     unit_capacity: float
     minimum_share: float
-    curve: EfficiencyCurve | BranchCurve
+    curve: EfficiencyCurve | JetCurve | BranchCurve
     axis_level: float | None = None
     branch: float = 0.0
 
@@ -119,7 +145,7 @@ class UnitGroup:
             self,
             rated_head=self.rated_head + lost,
             minimum_share=float(relative_opening(np.array([self.minimum_share]), share)[0]),
-            curve=BranchCurve(cast("EfficiencyCurve", self.curve), share),
+            curve=BranchCurve(cast("EfficiencyCurve | JetCurve", self.curve), share),
             branch=0.0,
         )
 

@@ -129,6 +129,8 @@ def _answer(estimate: SiteEstimate) -> str:
         f"In a mean year the plant delivers {words.energy(estimate.mean_annual_energy_mwh)}, as "
         f"much as {rounded(full)} hours at full capacity. "
     )
+    if estimate.gain is not None:
+        text += f"That is {words.gain(estimate)}. "
     if not estimate.has_years:
         return text + (
             "The river is known by a duration table alone, so nothing can be said of single years "

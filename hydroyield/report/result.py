@@ -42,6 +42,7 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
         "characteristic_discharge_m3s": estimate.characteristic_discharge_m3s,
         "environmental_flow_mean_m3s": estimate.environmental_flow_mean_m3s,
         "days_at_residual_flow": estimate.days_at_residual_flow,
+        "gain": _gain(estimate),
         "mean_hours_a_year": _hours(estimate),
         "unit_running_hours": unit_hours(estimate),
         "environmental_flow_costs": _rule_costs(estimate),
@@ -132,6 +133,18 @@ def _transfer(estimate: SiteEstimate) -> dict[str, Any]:
             "zero": list(fit.zero),
         }
     return facts
+
+
+def _gain(estimate: SiteEstimate) -> dict[str, Any] | None:
+    gain = estimate.gain
+    if gain is None:
+        return None
+    return {
+        "baseline_mwh": gain.baseline_mwh,
+        "energy_mwh": gain.energy_mwh,
+        "gain_mwh": gain.gain_mwh,
+        "years": list(gain.years),
+    }
 
 
 def _hours(estimate: SiteEstimate) -> dict[str, float]:

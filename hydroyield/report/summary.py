@@ -93,6 +93,8 @@ def _facts(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
     yield "Mean annual energy", words.energy(estimate.mean_annual_energy_mwh)
     if words.filled(estimate):
         yield "", words.filled(estimate)
+    if words.gain(estimate):
+        yield "Gain", words.gain(estimate)
     yield "Capacity factor", words.percent(estimate.capacity_factor)
     yield "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, {units}"
     yield "Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW"

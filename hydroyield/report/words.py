@@ -141,6 +141,20 @@ def filled(estimate: SiteEstimate) -> str:
     return f"{100 * share:.1f} % of the days used filled from a reference" if share else ""
 
 
+def gain(estimate: SiteEstimate) -> str:
+    """The gain over the old plant in one sentence; "" without one."""
+    found = estimate.gain
+    if found is None:
+        return ""
+    more = "more" if found.gain_mwh >= 0 else "less"
+    share = abs(found.gain_mwh) / found.baseline_mwh if found.baseline_mwh else 0.0
+    years = f" over {len(found.years)} years that both have" if found.years else ""
+    return (
+        f"{energy(abs(found.gain_mwh))} a year {more} than the old plant "
+        f"({energy(found.baseline_mwh)}, {percent(share)}){years}"
+    )
+
+
 def inflow_below(model: SiteFile) -> str:
     """Water that joins between intake and tailwater, in one phrase; "" without any."""
     block = model.discharge.inflow_below_intake

@@ -31,7 +31,14 @@ from hydroyield.hydraulics.levels import Level
 from hydroyield.hydraulics.losses import racks_of_seasons
 from hydroyield.hydraulics.rating_fit import fit_rating
 from hydroyield.hydraulics.water import STANDARD_DENSITY
-from hydroyield.powerhouse import EfficiencyCurve, Electrical, LoadCurve, Plant, machine_types
+from hydroyield.powerhouse import (
+    EfficiencyCurve,
+    Electrical,
+    JetCurve,
+    LoadCurve,
+    Plant,
+    machine_types,
+)
 from hydroyield.river import Abstraction, InflowShare, InflowSteps, WaterRules, quantile
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.reserve import ALL_YEAR, InflowRule
@@ -273,19 +280,20 @@ def electrical(model: SiteFile) -> Electrical:
     )
 
 
-def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve:
-    """The curve given, or the typical one of the type."""
+def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve | JetCurve:
+    """The curve given, or the typical one of the type; with jets that close one by one."""
     points = group.efficiency
     if points is None or isinstance(points, str):
         points = machine_types()[group.type].curve
     shares, efficiencies = zip(*points, strict=True)
-    return EfficiencyCurve(tuple(shares), tuple(efficiencies))
+    curve = EfficiencyCurve(tuple(shares), tuple(efficiencies))
+    return curve if group.jets is None else JetCurve(curve, group.jets)
 
 
 def minimum_share(group: TurbineGroup) -> float:
     """The minimum discharge given, or that of the type, as a share of full discharge."""
     if group.minimum_discharge is None:
-        return machine_types()[group.type].minimum_discharge
+        return machine_types()[group.type].minimum_discharge / (group.jets or 1)
     return group.minimum_discharge
 
 

@@ -13,6 +13,7 @@ from typing import Annotated, Any, ClassVar, Literal
 from pydantic import BeforeValidator, Field
 
 from hydroyield.quantities import ANGLE, LENGTH, TEMPERATURE
+from hydroyield.site.baseline_models import Baseline
 from hydroyield.site.blocks import Block
 from hydroyield.site.discharge_models import Discharge
 from hydroyield.site.faults import flow, shown
@@ -99,4 +100,10 @@ class SiteFile(Block):
         default_factory=Operation,
         description="How the plant is run; always on if left out.",
         examples=[Operation.example],
+    )
+    baseline: Baseline | None = Field(
+        default=None,
+        description="A plant that runs at the site already, against which the gain is stated; "
+        "nothing is compared if left out.",
+        examples=[Baseline.example],
     )

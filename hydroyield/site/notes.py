@@ -75,7 +75,9 @@ def _filled_in_by_type(site: SiteDescription) -> list[Note]:
             continue
         path = ("turbines", number)
         if group.minimum_discharge is None:
-            share = f"{100 * typical.minimum_discharge:g} % of full discharge, usual for the type"
+            least = 100 * typical.minimum_discharge / (group.jets or 1)
+            of_jets = ", of one jet" if group.jets else ""
+            share = f"{least:g} % of full discharge, usual for the type{of_jets}"
             notes.append(Note(key_text((*path, "minimum_discharge")), share))
         if group.efficiency is None or group.efficiency == "typical":
             notes.append(

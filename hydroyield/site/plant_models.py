@@ -117,6 +117,13 @@ class TurbineGroup(Block):
         "turbine efficiency [share or %], or the word typical; typical of the type if left out.",
         examples=[[[0.2, 0.71], [0.6, 0.9], [1.0, 0.89]]],
     )
+    jets: Annotated[int, Whole(1, 6)] | None = Field(
+        default=None,
+        description="Number of jets of a pelton or turgo unit that close one after another at part "
+        "load; efficiency is then that of one jet, or of all when all are open. The curve counts "
+        "as it stands if left out.",
+        examples=[2],
+    )
     axis_level: Annotated[float, Quantity(LENGTH)] | None = Field(
         default=None,
         description="Level of the turbine axis [m], for impulse machines: the head ends there, "
@@ -143,6 +150,8 @@ class TurbineGroup(Block):
                 "unit_capacity: 125 kW, or both",
             )
         yield from _branch_findings(written)
+        if "jets" in named and written.get("type") not in ("pelton", "turgo"):
+            yield ("jets",), "only pelton and turgo units have jets; take the key out"
         if written.get("type") != "other":
             return
         if "efficiency" not in named or written.get("efficiency") == "typical":

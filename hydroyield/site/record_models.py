@@ -20,7 +20,7 @@ DateOrder = Literal["day_first", "month_first"]
 DecimalMark = Literal["point", "comma"]
 
 
-def _stays_inside(name: str, info: ValidationInfo) -> str:
+def stays_inside(name: str, info: ValidationInfo) -> str:
     """A relative path that does not leave the folder of the site file, links included."""
     if "\\" in name:
         raise ValueError(f"'{shown(name)}' holds a backslash; write / between folders")
@@ -65,7 +65,7 @@ def _files(value: object) -> tuple[str, ...]:
 
 
 def _stay_inside(names: tuple[str, ...], info: ValidationInfo) -> tuple[str, ...]:
-    return tuple(_stays_inside(name, info) for name in names)
+    return tuple(stays_inside(name, info) for name in names)
 
 
 def _record_unit(unit: str) -> str:
