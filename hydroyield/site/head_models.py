@@ -34,8 +34,11 @@ _COLUMNS = ("discharge", "level")
 
 
 def _enough(table: Table) -> Iterable[Finding]:
-    if len(table) < 3:
-        yield (), "a rating is fitted to three gaugings or more; write more, or a table"
+    if len({level for _, level in table}) < 3:
+        yield (
+            (),
+            "a rating needs three gaugings at different levels or more; write more, or a table",
+        )
     yield from _falling(table)
 
 

@@ -154,6 +154,7 @@ HEAD = [
     (LEVELS, "@@[[-1, 97.9], [0, 98]]", "head.tailwater.table[0][0]", "discharge: '-1' is out of range"),
     (LEVELS, "@@[[0, 97.9], [1, 97.8]]", "head.tailwater.table[1][1]", "a rating that falls"),
     (LEVELS, "@@[[0, 97.9], [1, [2]]]", "head.tailwater.table[1][1]", "level: a list stands where a length"),
+    ("tailwater: {table: [[0 m3/s, 97.90 m], [20 m3/s, 98.35 m], [100 m3/s, 99.8 m]]", "tailwater: {@@gaugings: [[1, 97], [2, 97], [3, 98]]", "head.tailwater.gaugings", "three gaugings at different levels or more"),
     ("follows: river", "@@follows: higher", "head.tailwater.river", "is missing; write river: {table"),
     ("follows: river", "@@river: {level: 97 m}", "head.tailwater.river", "is read with follows: higher"),
     ("follows: river", "@@follows: rivr", "head.tailwater.follows", "write one of river, turbine, higher; did you mean river?"),
