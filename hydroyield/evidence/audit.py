@@ -99,10 +99,9 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
             share <= LARGEST_SHARE_OUTSIDE,
             share,
             LARGEST_SHARE_OUTSIDE,
-            f"The {side} table covers {1 - share:.1%} of the time.",
-            f"The {side} table covers {low:g} to {high:g} m3/s, "
-            f"and {share:.1%} of the time lies outside, where the first level is held and the "
-            "last segment extended. Survey levels at more discharges.",
+            f"The survey of the {side} covers {1 - share:.1%} of the time.",
+            f"The {side} was surveyed at {low:.3g} to {high:.3g} m3/s, and {share:.1%} of the time "
+            f"lies outside, where {_beyond(level)}. Survey levels at more discharges.",
         )
     below = {"tailwater": scheme.heads.tailwater, "river": scheme.heads.river_level}
     for side, found in below.items():
@@ -113,6 +112,12 @@ def _levels(estimate: Estimate) -> Iterator[Check]:
             "headwater_weir", "pass", None, None,
             "The headwater follows the discharge over a free weir, approach velocity neglected.",
         )  # fmt: skip
+
+
+def _beyond(level: object) -> str:
+    if isinstance(level, FittedRating):
+        return "the fitted rating is drawn on"
+    return "the first level is held and the last segment extended"
 
 
 def _presets(site: SiteDescription) -> Iterator[Check]:

@@ -169,6 +169,7 @@ def _basis(estimate: SiteEstimate) -> Rows:
     rows.append(
         ("Shutdown", f"above {words.discharge(shutdown)} in the river" if shutdown else "none")
     )
+    rows.append(("Outages", words.outages(estimate)))
     return rows
 
 

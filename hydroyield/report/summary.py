@@ -30,7 +30,7 @@ LEDGER_NAMES = {
     "below_minimum_or_unused": "below the minimum discharge, or unused",
     "outage": "units out of service",
     "levels": "head that differs from the reference head",
-    "waterway": "losses on the way to the turbines",
+    "waterway": "losses of the waterway",
     "turbine": "losses of the turbines",
     "drive_and_generator": "losses of drive and generator",
     "transformer": "losses of the transformer",

@@ -208,7 +208,28 @@ def _level(form: RiverLevel) -> str:
 
 def waterway(model: SiteFile) -> str:
     """The losses in one phrase."""
-    return "; ".join(map(_loss, model.waterway)) or "none stated"
+    losses = list(map(_loss, model.waterway))
+    for number, group in enumerate(model.turbines):
+        losses += [f"each unit of turbines[{number}]: {_loss(loss)}" for loss in group.waterway]
+    return "; ".join(losses) or "none stated"
+
+
+def outages(estimate: SiteEstimate) -> str:
+    """When units are out of service, in one phrase."""
+    found = estimate.scheme.outages
+    parts = []
+    if found.planned is not None:
+        parts.append(f"{found.planned.days:g} days of each unit in {months(found.planned.months)}")
+    if found.standstill is not None:
+        standstill = found.standstill
+        parts.append(f"all stand {standstill.days:g} days in {months(standstill.months)}")
+    if found.forced_rate:
+        parts.append(f"each unit down {100 * found.forced_rate:g} % of the hours")
+    if found.common_rate:
+        parts.append(f"all down {100 * found.common_rate:g} % of the hours")
+    if found.closed:
+        parts.append(f"closed in {months(found.closed)}")
+    return "; ".join(parts) or "none stated"
 
 
 def _loss(loss: WaterwayLoss) -> str:
@@ -241,7 +262,9 @@ def electrical(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
         ("Generator", given.generator_efficiency),
         ("Transformer", given.transformer_efficiency),
     ):
-        yield name, _efficiency(share)
+        losses_stated = given.transformer_no_load_loss or given.transformer_load_loss
+        if not (name == "Transformer" and share is None and losses_stated):
+            yield name, _efficiency(share)
     own_use, limit = given.own_use, given.export_limit
     yield (
         "Own use",
