@@ -44,7 +44,12 @@ class AnnualCurves:
         return np.asarray(np.median(self.discharge, axis=0))
 
     def position(self, year: int) -> float:
-        """Share of the years, this one included, whose curve has no higher mean, 0 to 1."""
+        """Share of the years, this one included, whose curve has no higher mean, 0 to 1.
+
+        Raises ValueError for a year that has no curve.
+        """
+        if year not in self.years:
+            raise ValueError(f"the year {year} has no duration curve")
         means = self.discharge.mean(axis=1)
         own = means[self.years == year]
         return float((means <= own).mean())

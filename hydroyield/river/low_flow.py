@@ -68,14 +68,18 @@ class LowFlow:
 def low_flow(minima: ArrayLike, return_period: float = 10.0) -> LowFlow:
     """Low flow that is undercut once in so many years.
 
-    minima : array_like, (n,) one of each year [m3/s]
-    return_period : in years
+    minima : array_like, (n,) one of each year, nan where it is not known [m3/s]
+    return_period : in years, above 1
 
     A Pearson type III distribution is fitted to the logarithms by their moments, as US agencies
     do for the 7Q10 (Riggs 1972, USGS Techniques of Water-Resources Investigations, book 4,
     chapter B1); years without flow are accounted for by conditional probability.
+    Raises ValueError without a known minimum, and for a return period of a year or less.
     """
     x = np.asarray(minima, dtype=np.float64)
+    x = x[~np.isnan(x)]
+    if not x.size or not return_period > 1:
+        raise ValueError("a low flow needs a yearly minimum and a return period above one year")
     flowing, probability = x[x > 0], 1 / return_period
     dry = 1 - flowing.size / x.size
     method = "log-Pearson III by moments of the logarithms"
@@ -116,8 +120,8 @@ def base_flow_index(discharge: Floats) -> float:
 
     discharge : (n,) daily, nan where missing [m3/s]
 
-    Smoothed minima of five-day blocks: a minimum is a turning point where 0.9 times it is below
-    both neighbours; straight lines between them are the base flow, never above the discharge
+    Smoothed minima of five-day blocks: a minimum is a turning point where 0.9 times it is not
+    above either neighbour; straight lines between them are the base flow, never above the discharge
     (Institute of Hydrology 1980, Low Flow Studies; Gustard, Bullock & Dixon 1992, IH Report 108).
     Blocks with a missing day give no minimum.
     """

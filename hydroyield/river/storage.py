@@ -20,7 +20,7 @@ class MassCurve:
     departure : (n,) at the end of each day, 0 before the first [m3]
     mean : discharge of the valid days [m3/s]
     storage : range between the extreme tangents that are parallel to the mean flow [m3]
-    highest, lowest : dates at whose end the curve stands highest and lowest, datetime64[D]
+    lowest, highest : dates at whose end the curve stands lowest and highest, datetime64[D]
     filled_days : days without a value, taken as the mean
     """
 
@@ -28,8 +28,8 @@ class MassCurve:
     departure: Floats
     mean: float
     storage: float
-    highest: np.datetime64
     lowest: np.datetime64
+    highest: np.datetime64
     filled_days: int
 
 
@@ -41,17 +41,20 @@ def mass_curve(dates: NDArray[np.datetime64], discharge: Floats) -> MassCurve:
 
     The range of the curve is the smallest storage that delivers the mean at all times (Rippl 1883,
     Min. Proc. Inst. Civ. Eng. 71: 270-278; Hurst 1951, Trans. Am. Soc. Civ. Eng. 116: 770-799).
+    Raises ValueError where no day has a value.
     """
     missing = np.isnan(discharge)
+    if missing.all():
+        raise ValueError("a mass curve needs a day with a value")
     mean = float(discharge[~missing].mean())
     departure = np.cumsum(np.where(missing, 0.0, discharge - mean)) * DAY_SECONDS
     most, least = max(0.0, float(departure.max())), min(0.0, float(departure.min()))
     return MassCurve(
-        dates,
-        departure,
-        mean,
-        most - least,
-        dates[int(departure.argmax())],
-        dates[int(departure.argmin())],
-        int(missing.sum()),
+        dates=dates,
+        departure=departure,
+        mean=mean,
+        storage=most - least,
+        lowest=dates[int(departure.argmin())],
+        highest=dates[int(departure.argmax())],
+        filled_days=int(missing.sum()),
     )

@@ -10,6 +10,8 @@ from numpy.typing import ArrayLike, NDArray
 
 Floats = NDArray[np.float64]
 
+ROUNDING = 1e-12  # differences below this share of the largest value are no differences
+
 
 @dataclass(frozen=True)
 class Trend:
@@ -31,7 +33,7 @@ def trend(years: ArrayLike, values: ArrayLike) -> Trend:
     """Mann-Kendall test with Sen's slope.
 
     years : array_like, (n,), rising, not necessarily without gaps
-    values : array_like, (n,) of any unit
+    values : array_like, (n,) of any unit; no nan
 
     Mann 1945 (Econometrica 13: 245-259) and Kendall 1975 (Rank Correlation Methods), variance
     corrected for ties, continuity corrected; slope by Sen 1968 (J. Am. Stat. Assoc. 63:
@@ -73,7 +75,7 @@ class Break:
 def break_in(values: ArrayLike) -> Break:
     """Pettitt's test for a break (1979, J. R. Stat. Soc. C 28(2): 126-135).
 
-    values : array_like, (n,) in order of time, of any unit
+    values : array_like, (n,) in order of time, of any unit; no nan
 
     K is the largest |U_t|, U_t the sum of sign(x_j - x_i) over i <= t < j, and p about
     2 exp(-6 K^2 / (n^3 + n^2)). Raises ValueError for fewer than two values.
@@ -93,14 +95,15 @@ def break_in(values: ArrayLike) -> Break:
 def autocorrelation(values: ArrayLike, lag: int = 1) -> float:
     """Autocorrelation about the mean of all values; 0 where they are equal or too few.
 
-    values : array_like, (n,) in order of time, of any unit
+    values : array_like, (n,) in order of time, of any unit; no nan
+    lag : how many places apart, 0 or more
     """
     x = np.asarray(values, dtype=np.float64)
-    if x.size <= lag:
+    # the mean of equal values may miss them by a last digit, which would look like persistence
+    if x.size <= lag or np.ptp(x) <= ROUNDING * np.abs(x).max():
         return 0.0
     apart = x - x.mean()
-    spread = float((apart**2).sum())
-    return float((apart[lag:] * apart[:-lag]).sum()) / spread if spread > 0 else 0.0
+    return float((apart[lag:] * apart[: x.size - lag]).sum() / (apart**2).sum())
 
 
 @dataclass(frozen=True)
@@ -120,7 +123,7 @@ class MeanError:
 def standard_error_of_mean(values: ArrayLike) -> MeanError:
     """Standard error of the mean of yearly values that depend on the year before.
 
-    values : array_like, (n,) in order of time, of any unit
+    values : array_like, (n,) in order of time, of any unit; no nan
 
     The variance of the mean of a first-order autoregressive series is that of independent values
     times 1 + 2 sum over k of (1 - k / n) r^k (Bayley & Hammersley 1946, Suppl. J. R. Stat. Soc.

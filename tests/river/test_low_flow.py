@@ -119,3 +119,74 @@ def test_frequency_factors_against_scipy(skew: float) -> None:
     for probability in (0.01, 0.1, 0.5):
         found = low_flow_module._frequency_factor(skew, probability)
         assert found == pytest.approx(stats.pearson3.ppf(probability, skew), abs=1e-6)
+
+
+def test_an_unknown_minimum_is_no_dry_year() -> None:
+    known = [0.8, 1.0, 1.3, 0.9]
+    found = low_flow([*known, np.nan])
+    assert found == low_flow(known)
+    assert (found.years, "without flow" in found.method) == (4, False)
+
+
+@pytest.mark.parametrize(
+    ("minima", "return_period"), [([], 10.0), ([np.nan], 10.0), ([1.0, 2.0], 1.0)]
+)
+def test_no_low_flow_without_a_minimum_or_a_return_period(
+    minima: list[float], return_period: float
+) -> None:
+    with pytest.raises(ValueError, match=r"a yearly minimum and a return period above one year"):
+        low_flow(minima, return_period)
+
+
+@pytest.mark.parametrize(("missing", "counts"), [(12, True), (13, False)])
+def test_a_year_needs_19_of_20_windows(missing: int, counts: bool) -> None:
+    """Of 365 windows 346.75 must be whole; a gap of m days spoils m + 6: 12 leave 347."""
+    discharge = np.ones(DATES.size)
+    start = int(np.flatnonzero(np.datetime64("2003-06-01") == DATES)[0])
+    discharge[start : start + missing] = np.nan
+    assert (2003 in seven_day_minima(DATES, discharge, 1)) is counts
+
+
+def test_base_flow_by_hand() -> None:
+    """Minima 4, 2, 5, 3, 5 of five blocks: the 2 of day 7 and the 3 of day 17 are turning points.
+
+    The line between them holds 11 days x 2.5; the river brings 67 in these days.
+    """
+    blocks = [
+        [10, 8, 6, 5, 4], [4, 3, 2, 3, 9], [12, 10, 8, 6, 5], [5, 4, 3, 3, 6], [9, 8, 7, 6, 5]
+    ]  # fmt: skip
+    assert base_flow_index(np.array(blocks, dtype=float).ravel()) == pytest.approx(27.5 / 67)
+
+
+def naive_base_flow_index(discharge: list[float]) -> float:
+    """The same method, from memory of the two reports, one day after the other."""
+    minima: list[tuple[int, float]] = []
+    for start in range(0, len(discharge) - 4, 5):
+        block = discharge[start : start + 5]
+        if not any(np.isnan(block)):
+            minima.append((start + block.index(min(block)), min(block)))
+    turning = [
+        middle
+        for before, middle, after in zip(minima, minima[1:], minima[2:], strict=False)
+        if 0.9 * middle[1] <= min(before[1], after[1])
+    ]
+    base = total = 0.0
+    for day in range(turning[0][0], turning[-1][0] + 1):
+        left = [point for point in turning if point[0] <= day][-1]
+        right = next(point for point in turning if point[0] >= day)
+        along = (day - left[0]) / max(1, right[0] - left[0])
+        if not np.isnan(discharge[day]):
+            base += min(discharge[day], left[1] + along * (right[1] - left[1]))
+            total += discharge[day]
+    return base / total
+
+
+@settings(max_examples=20, deadline=None)
+@given(st.integers(0, 1000), st.integers(0, 20), st.sampled_from([0.0, 0.5, 0.9]))
+def test_base_flow_against_a_loop(seed: int, gaps: int, cut: float) -> None:
+    """Also of a river that falls dry, where what exceeds `cut` is left."""
+    discharge = np.maximum(0, flow(seed)[:400] - cut * np.median(flow(seed)[:400]))
+    draw = np.random.default_rng(seed)
+    discharge[draw.integers(0, 400, gaps)] = np.nan
+    expected = naive_base_flow_index(discharge.tolist())
+    assert base_flow_index(discharge) == pytest.approx(expected, rel=1e-9)

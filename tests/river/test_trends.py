@@ -60,6 +60,17 @@ def test_kendall_tau_of_scipy_sees_the_same_trend() -> None:
     assert tau.pvalue == pytest.approx(2 * stats.norm.sf(s / deviation))
 
 
+@quick
+@given(SERIES.filter(lambda values: abs(naive_trend(values)[0]) > 1))
+def test_ties_as_scipy_corrects_for_them(values: list[float]) -> None:
+    """scipy's asymptotic test has the same variance, and no continuity correction."""
+    s = abs(naive_trend(values)[0])
+    years = range(len(values))
+    expected = stats.kendalltau(years, values, method="asymptotic").pvalue
+    without_correction = abs(trend(years, values).z) * s / (s - 1)
+    assert 2 * stats.norm.sf(without_correction) == pytest.approx(expected, rel=1e-6)
+
+
 def test_missing_years_count_as_time() -> None:
     found = trend([2000, 2001, 2011], [1.0, 2.0, 12.0])
     assert found.slope == pytest.approx(1.0)
@@ -107,6 +118,24 @@ def test_autocorrelation_by_hand(values: list[float], lag: int) -> None:
     bottom = sum((v - mean) ** 2 for v in values)
     expected = top / bottom if bottom > 1e-12 else 0.0
     assert autocorrelation(values, lag) == pytest.approx(expected, abs=1e-9)
+
+
+@pytest.mark.parametrize("value", [0.0, 0.1, 2.7, 123.456])
+@pytest.mark.parametrize("count", [1, 3, 6, 25])
+def test_equal_values_have_no_autocorrelation(value: float, count: int) -> None:
+    """The mean of six times 0.1 is not 0.1 to the last digit."""
+    assert autocorrelation([value] * count) == 0.0
+
+
+def test_autocorrelation_with_itself_is_one() -> None:
+    assert autocorrelation([1.0, 2.0, 4.0], lag=0) == pytest.approx(1.0)
+
+
+@quick
+@given(SERIES, st.sampled_from([1e-6, 1e3]))
+def test_autocorrelation_does_not_depend_on_the_unit(values: list[float], factor: float) -> None:
+    scaled = [factor * value for value in values]
+    assert autocorrelation(scaled) == pytest.approx(autocorrelation(values), abs=1e-9)
 
 
 def test_error_of_the_mean_of_independent_years() -> None:
