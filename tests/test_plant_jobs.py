@@ -430,3 +430,52 @@ def test_the_gain_over_an_old_plant(tmp_path: Path) -> None:
 def test_a_baseline_without_a_year_in_common_is_a_fault(tmp_path: Path) -> None:
     with pytest.raises(hydroyield.errors.SiteFileError, match="baseline: none of its years"):
         estimate(tmp_path, baseline="{yearly_energy: {1990: 640}}")
+
+
+# --- efficiency over heads ------------------------------------------------------------------------
+
+FALLING = "{headwater: {level: 30}, tailwater: {table: [[0, 10], [9, 16], [90, 16]]}}"
+
+
+def chart(rows: str) -> str:
+    table = f"{{heads: [12, 16, 20], discharges: [0.3, 1.5, 3], values: {rows}}}"
+    return f"\n  {UNIT.replace(CURVE, table)}}}"
+
+
+def test_a_level_table_over_heads_is_one_efficiency(tmp_path: Path) -> None:
+    level = "[[0.8, 0.8, 0.8], [0.8, 0.8, 0.8], [0.8, 0.8, 0.8]]"
+    found = estimate(tmp_path, head=FALLING, turbines=chart(level))
+    flat = f"\n  {UNIT.replace(CURVE, '[[0.1, 0.8], [1, 0.8]]')}}}"
+    one = estimate(tmp_path, head=FALLING, turbines=flat)
+    assert found.mean_annual_energy_mwh == pytest.approx(one.mean_annual_energy_mwh, rel=1e-4)
+
+
+def test_a_chart_over_heads_against_a_search_of_every_day(tmp_path: Path) -> None:
+    values = np.array([[0.60, 0.72, 0.70], [0.70, 0.84, 0.80], [0.74, 0.90, 0.87]])
+    found = estimate(tmp_path, head=FALLING, turbines=chart(str(values.tolist())))
+    from scipy.interpolate import RegularGridInterpolator
+
+    efficiency = RegularGridInterpolator(([12, 16, 20], [0.3, 1.5, 3]), values)
+    capacity = WEIGHT * 3 * 20 * 0.87
+    daily = []
+    for river in RIVER:
+        net = 30 - float(np.interp(river, [0, 9], [10, 16]))
+        full = 3 * np.sqrt(net / 20)
+        tried = np.linspace(0.2 * full, min(full, max(river, 0.2 * full)), 4000)
+        eta = efficiency((np.clip(net, 12, 20), np.clip(tried, 0.3, 3)))
+        power = np.minimum(WEIGHT * tried * net * eta, capacity)
+        daily.append(power.max() if river >= 0.2 * full else 0.0)
+    by_hand = sum(daily) * 24 / 4e6
+    assert found.mean_annual_energy_mwh == pytest.approx(by_hand, rel=5e-4)
+    ledger(found)
+    assert check(found, "head_of_table").outcome == "pass"
+
+
+def test_a_table_over_heads_needs_its_rows(tmp_path: Path) -> None:
+    fault = hydroyield.errors.SiteFileError
+    with pytest.raises(fault, match=r"values: has 2 rows; write 3"):
+        estimate(tmp_path, turbines=chart("[[0.8, 0.8, 0.8], [0.8, 0.8, 0.8]]"))
+    with pytest.raises(
+        hydroyield.errors.SiteFileError, match=r"values\[1\]: has 2 values; write 3"
+    ):
+        estimate(tmp_path, turbines=chart("[[0.8, 0.8, 0.8], [0.8, 0.8], [0.8, 0.8, 0.8]]"))

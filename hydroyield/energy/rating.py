@@ -16,7 +16,7 @@ from hydroyield.errors import ComputationError
 from hydroyield.hydraulics import Heads
 from hydroyield.hydraulics.heads import FREE
 from hydroyield.hydraulics.losses import Waterway
-from hydroyield.powerhouse import EfficiencyCurve, JetCurve, UnitGroup
+from hydroyield.powerhouse import EfficiencyCurve, HillChart, JetCurve, UnitGroup
 from hydroyield.river import WaterRules
 
 Floats = NDArray[np.float64]
@@ -48,7 +48,7 @@ class UnitSpecification:
     rated_head: float | None
     unit_capacity: float | None
     minimum_share: float
-    curve: EfficiencyCurve | JetCurve
+    curve: EfficiencyCurve | JetCurve | HillChart
     axis_level: float | None = None
     branch: Waterway = FREE
 
@@ -161,7 +161,12 @@ def _head_behind_branch(unit: UnitSpecification, head: float, setting: Setting) 
 
 def _output_per_discharge(unit: UnitSpecification, head: float, setting: Setting) -> float:
     """Output of a fully open unit at the generator terminals per discharge [W per m3/s]."""
-    return setting.terminal_weight * head * float(unit.curve(np.array([1.0]))[0])
+    if isinstance(unit.curve, HillChart):
+        assert unit.rated_discharge is not None  # the site file is refused without
+        efficiency = float(unit.curve(np.array(unit.rated_discharge), np.array(head)))
+    else:
+        efficiency = float(unit.curve(np.array([1.0]))[0])
+    return setting.terminal_weight * head * efficiency
 
 
 def _total_discharge(units: Sequence[UnitSpecification], setting: Setting) -> float:

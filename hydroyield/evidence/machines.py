@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
-from hydroyield.powerhouse import UnitGroup, machine_types
+from hydroyield.powerhouse import HillChart, UnitGroup, machine_types
 from hydroyield.powerhouse.types import SMALL_MACHINE
 from hydroyield.quantities import W_PER_KW
 from hydroyield.site.assembly import Assembled
@@ -26,7 +26,10 @@ def machine_checks(
         typical = site.model.turbines[number].efficiency in (None, "typical")
         yield _generator(label, group, estimate)
         yield from _against_type(label, group, typical)
-        yield _head_band(label, group, estimate)
+        if isinstance(group.curve, HillChart):
+            yield _head_of_chart(label, group.curve, estimate)
+        else:
+            yield _head_band(label, group, estimate)
     yield _rated_state(assembled)
 
 
@@ -105,6 +108,26 @@ def _head_band(label: str, group: UnitGroup, estimate: Estimate) -> Check:
         f"{label}: {share:.0%} of the energy is made outside {HEAD_BAND[0]:g} to {HEAD_BAND[1]:g} "
         "of the rated head, where a curve for one head is a guess (common practice). Ask the maker "
         "for curves at several heads, or look at the rated head.",
+    )
+
+
+def _head_of_chart(label: str, chart: HillChart, estimate: Estimate) -> Check:
+    """Share of the plant's energy made at heads that the efficiency table does not hold."""
+    run = estimate.operation
+    outside = (run.net_head < chart.heads[0]) | (run.net_head > chart.heads[-1])
+    made = estimate.cells.per_year(estimate.net_power)
+    share = estimate.cells.per_year(estimate.net_power * outside) / made if made else 0.0
+    words = (
+        f"{label}: {share:.0%} of the energy is made outside {chart.heads[0]:g} to "
+        f"{chart.heads[-1]:g} m, the heads of its efficiency table"
+    )
+    return warn_unless(
+        "head_of_table",
+        share <= LARGEST_SHARE_OUTSIDE,
+        share,
+        LARGEST_SHARE_OUTSIDE,
+        f"{words}.",
+        f"{words}, where the nearest row is held. Ask the maker for more heads.",
     )
 
 

@@ -8,6 +8,7 @@ from hydroyield.powerhouse.types import MachineType, machine_types
 from hydroyield.powerhouse.units import (
     EfficiencyCurve,
     Electrical,
+    HillChart,
     JetCurve,
     LoadCurve,
     Plant,
@@ -19,6 +20,7 @@ __all__ = [
     "EfficiencyCurve",
     "Electrical",
     "HeadLines",
+    "HillChart",
     "JetCurve",
     "LoadCurve",
     "MachineType",

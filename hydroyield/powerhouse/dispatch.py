@@ -18,7 +18,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from hydroyield.powerhouse.units import Plant, UnitGroup
+from hydroyield.powerhouse.units import HillChart, Plant, UnitGroup
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -82,6 +82,12 @@ class DispatchTable:
         exponents = {group.head_exponent for group in self.plant.groups}
         return len(exponents) == 1 and len(self.lines.lower_ends) == 1
 
+    @property
+    def _scales(self) -> bool:
+        """Whether the rows of all heads have one shape, up to the capacities."""
+        charts = any(isinstance(group.curve, HillChart) for group in self.plant.groups)
+        return self._alike and not charts
+
     def _stretched(self, head: Floats) -> Floats:
         """Scale on which the power of an open unit is linear: H^1.5, for screws H."""
         largest = max(group.head_exponent for group in self.plant.groups)
@@ -106,7 +112,7 @@ class DispatchTable:
             if own == line
         ]
         limits = [head for head in limits if head < highest]
-        straight = self._alike and self.plant.electrical.load_curve is None
+        straight = self._scales and self.plant.electrical.load_curve is None
         if straight and not limits:
             return np.array([0.0, highest])
         lowest = min(limits) if straight else 0.0
@@ -197,10 +203,10 @@ class DispatchTable:
         head = np.maximum(head, 1e-6)
         scale = self._reference(np.maximum(self._row_heads, 1e-6))[:, None]
         open_water = (group.full_discharge(head) * head)[:, None]
-        if self._alike and steps.min() == steps.max():
-            relative = np.broadcast_to(share[:1] * group.curve(share[:1]), share.shape)
+        if self._scales and steps.min() == steps.max():
+            relative = np.broadcast_to(share[:1] * group.efficiency(share[:1], 1.0), share.shape)
         else:
-            relative = share * group.curve(share)
+            relative = share * group.efficiency(share, head[:, None])
         output = self.plant.terminal_output(group, open_water * relative)
         output = np.minimum(output, group.unit_capacity) / scale
         output = np.where(runs, output, -np.inf)
@@ -300,7 +306,7 @@ class DispatchTable:
             alone = np.flatnonzero(near & ~np.isfinite(output) & (first == number))
             head = heads[line, alone]
             share = discharge[alone] / np.maximum(group.full_discharge(head), 1e-300)
-            water = discharge[alone] * head * group.curve(share)
+            water = discharge[alone] * head * group.efficiency(share, head)
             power = self.plant.terminal_output(group, water)
             output[alone] = np.where(share <= 1, np.minimum(power, group.unit_capacity), -np.inf)
         return output

@@ -155,7 +155,7 @@ class Dispatcher:
         for (group, line), discharge in zip(self.units_on_lines, discharges, strict=True):
             full = np.maximum(group.full_discharge(heads[line]), 1e-300)
             share = np.clip(discharge / full, group.minimum_share, 1.0)
-            water = discharge * heads[line] * group.curve(share)
+            water = discharge * heads[line] * group.efficiency(share, heads[line])
             power = self.plant.terminal_output(group, water)
             output += np.minimum(power, group.unit_capacity)
         return output
@@ -175,7 +175,7 @@ class Dispatcher:
         for (group, line), discharge in zip(self.units_on_lines, discharges, strict=True):
             full = np.maximum(group.full_discharge(heads[line]), 1e-300)
             share = np.clip(discharge / full, group.minimum_share, 1.0)
-            water = discharge * heads[line] * group.curve(share)
+            water = discharge * heads[line] * group.efficiency(share, heads[line])
             own = np.minimum(self.plant.terminal_output(group, water), group.unit_capacity)
             given += own
             taken += electrical.load_curve.shaft(own, group.unit_capacity) / electrical.drive

@@ -298,7 +298,7 @@ def _some_at_capacity(
         full = np.maximum(group.full_discharge(heads[line]), 1e-300)
         share = np.minimum(1.0, discharge / full + 1 / COLUMNS_PER_UNIT)
         power = dispatcher.plant.terminal_output(
-            group, full * heads[line] * share * group.curve(share)
+            group, full * heads[line] * share * group.efficiency(share, heads[line])
         )
         found |= (discharge > 0) & (power >= group.unit_capacity)
     return found

@@ -104,6 +104,44 @@ class JetCurve:
         return self.curve.best
 
 
+@dataclass(frozen=True)
+class HillChart:
+    """Efficiency of one unit over net head and discharge, as makers draw it.
+
+    heads : rising [m]
+    discharges : of one unit, rising [m3/s]
+    values : efficiency at each head (rows) and discharge
+
+    Linear between the points in both directions, constant outside them.
+    """
+
+    heads: tuple[float, ...]
+    discharges: tuple[float, ...]
+    values: tuple[tuple[float, ...], ...]
+
+    def __call__(self, discharge: Floats, head: Floats) -> Floats:
+        """Efficiency at `discharge` [m3/s] and net `head` [m], arrays that go together."""
+        row, up = _place(self.heads, head)
+        column, along = _place(self.discharges, discharge)
+        table = np.array(self.values)
+        low = table[row, column] + along * (table[row, column + 1] - table[row, column])
+        high = table[row + 1, column]
+        high = high + along * (table[row + 1, column + 1] - high)
+        return np.asarray(low + up * (high - low))
+
+    @property
+    def best(self) -> float:
+        return max(map(max, self.values))
+
+
+def _place(nodes: tuple[float, ...], x: Floats) -> tuple[NDArray[np.int64], Floats]:
+    """Interval of each x between rising nodes, and how far it lies along it, 0 to 1."""
+    edges = np.asarray(nodes)
+    inside = np.clip(x, edges[0], edges[-1])
+    left = np.clip(np.searchsorted(edges, inside, side="right") - 1, 0, edges.size - 2)
+    return left, (inside - edges[left]) / (edges[left + 1] - edges[left])
+
+
 def rising_part(x: Floats, y: Floats) -> tuple[Floats, Floats]:
     """The points at which y is larger than at any x before."""
     before = np.concatenate([[-np.inf], np.maximum.accumulate(y)[:-1]])
@@ -131,7 +169,7 @@ class UnitGroup:
     rated_head: float
     unit_capacity: float
     minimum_share: float
-    curve: EfficiencyCurve | JetCurve | BranchCurve
+    curve: EfficiencyCurve | JetCurve | BranchCurve | HillChart
     axis_level: float | None = None
     branch: float = 0.0
 
@@ -158,11 +196,18 @@ class UnitGroup:
         """
         return 0.0 if self.type == "screw" else 0.5
 
+    def efficiency(self, share: Floats, net_head: Floats | float) -> Floats:
+        """Efficiency at a share of full discharge and a net head [m], arrays that go together."""
+        if isinstance(self.curve, HillChart):
+            head = np.broadcast_to(net_head, np.broadcast_shapes(share.shape, np.shape(net_head)))
+            return self.curve(share * self.full_discharge(head), head)
+        return self.curve(share)
+
     @cached_property
     def _relative_output(self) -> tuple[Floats, Floats]:
         """Shares of full discharge, and share x efficiency at them as far as it rises."""
         share = np.linspace(self.minimum_share, 1, 2001)
-        return rising_part(share, share * self.curve(share))
+        return rising_part(share, share * self.efficiency(share, self.rated_head))
 
     @property
     def best_relative_output(self) -> float:
@@ -171,6 +216,8 @@ class UnitGroup:
 
     def share_giving(self, relative_output: Floats) -> Floats:
         """Least share of full discharge with this share x efficiency; inf where not reached."""
+        if isinstance(self.curve, HillChart):  # it depends on the head, and is found by search
+            return np.full(np.shape(relative_output), np.inf)
         share, relative = self._relative_output
         return np.interp(relative_output, relative, share, right=np.inf)
 

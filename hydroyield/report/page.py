@@ -12,6 +12,7 @@ from typing import Any
 import hydroyield
 from hydroyield.energy.standing import hours_by_cause
 from hydroyield.jobs import SiteEstimate
+from hydroyield.powerhouse import HillChart, UnitGroup
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.report import words
 from hydroyield.report.drawn import DrawnFigure, rendered
@@ -228,10 +229,15 @@ def _turbines(estimate: SiteEstimate) -> Rows:
                 mark("rated_discharge", words.discharge(group.rated_discharge)),
                 mark("rated_head", words.head(group.rated_head)),
                 words.percent(group.minimum_share),
-                "typical of the type" if typical else f"given, best {group.curve.best:.3g}",
+                "typical of the type" if typical else _given(group),
             )
         )
     return rows
+
+
+def _given(group: UnitGroup) -> str:
+    over = " over heads" if isinstance(group.curve, HillChart) else ""
+    return f"given{over}, best {group.curve.best:.3g}"
 
 
 def _assumptions(estimate: SiteEstimate) -> list[tuple[str, list[str]]]:

@@ -34,6 +34,7 @@ from hydroyield.hydraulics.water import STANDARD_DENSITY
 from hydroyield.powerhouse import (
     EfficiencyCurve,
     Electrical,
+    HillChart,
     JetCurve,
     LoadCurve,
     Plant,
@@ -46,7 +47,7 @@ from hydroyield.site.head_models import Head, Headwater, RiverLevel
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.outage_assembly import outages_of
 from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
-from hydroyield.site.plant_models import TurbineGroup
+from hydroyield.site.plant_models import EfficiencyTable, TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
 from hydroyield.site.river_assembly import RiverAtSite, inflow_below_intake
 from hydroyield.site.waterway_assembly import site_gravity, waterway_of
@@ -280,9 +281,11 @@ def electrical(model: SiteFile) -> Electrical:
     )
 
 
-def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve | JetCurve:
-    """The curve given, or the typical one of the type; with jets that close one by one."""
+def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve | JetCurve | HillChart:
+    """The curve or table given, or the typical curve of the type, with jets that close."""
     points = group.efficiency
+    if isinstance(points, EfficiencyTable):
+        return HillChart(points.heads, points.discharges, points.values)
     if points is None or isinstance(points, str):
         points = machine_types()[group.type].curve
     shares, efficiencies = zip(*points, strict=True)

@@ -6,7 +6,13 @@ from collections.abc import Iterable, Mapping
 from collections.abc import Set as AbstractSet
 from typing import Annotated, Any, ClassVar, Literal, get_args
 
-from pydantic import BeforeValidator, Field, WithJsonSchema
+from pydantic import (
+    BeforeValidator,
+    Field,
+    ValidatorFunctionWrapHandler,
+    WithJsonSchema,
+    WrapValidator,
+)
 
 from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, POWER, SHARE
 from hydroyield.site.blocks import Block
@@ -45,17 +51,71 @@ def _useful(table: Table) -> Iterable[Finding]:
             yield (index, 1), "an efficiency of 0 after one above 0; write an efficiency above 0"
 
 
-EfficiencyCurve = Annotated[
-    Table | Literal["typical"],
-    Pairs(
-        Quantity(SHARE, at_least=0, at_most=1),
-        Quantity(SHARE, at_least=0, at_most=1),
-        ("share of full discharge", "efficiency"),
-        "[[0.2, 0.71], [0.6, 0.9], [1.0, 0.89]]",
-        also=_useful,
-        word="typical",
-    ),
-]
+_CURVE = Pairs(
+    Quantity(SHARE, at_least=0, at_most=1),
+    Quantity(SHARE, at_least=0, at_most=1),
+    ("share of full discharge", "efficiency"),
+    "[[0.2, 0.71], [0.6, 0.9], [1.0, 0.89]]",
+    also=_useful,
+    word="typical",
+)
+EfficiencyCurve = Annotated[Table | Literal["typical"], _CURVE]
+
+
+class EfficiencyTable(Block):
+    """Efficiency of one unit over net head and discharge, as makers draw it."""
+
+    example: ClassVar[dict[str, Any]] = {
+        "heads": ["2 m", "3 m"],
+        "discharges": ["1 m3/s", "3 m3/s", "6 m3/s"],
+        "values": [[0.70, 0.84, 0.83], [0.72, 0.88, 0.87]],
+    }
+
+    heads: Annotated[tuple[Annotated[float, Quantity(LENGTH, above=0)], ...], ListOf("2 m", 2)] = (
+        Field(description="Net heads, rising [m].", examples=[["2 m", "3 m"]])
+    )
+    discharges: Annotated[
+        tuple[Annotated[float, Quantity(DISCHARGE, at_least=0)], ...], ListOf("1 m3/s", 2)
+    ] = Field(
+        description="Discharges of one unit, rising [m3/s].",
+        examples=[["1 m3/s", "3 m3/s", "6 m3/s"]],
+    )
+    values: Annotated[
+        tuple[
+            Annotated[
+                tuple[Annotated[float, Quantity(SHARE, at_least=0, at_most=1)], ...],
+                ListOf("0.70"),
+            ],
+            ...,
+        ],
+        ListOf("[0.70, 0.84, 0.83]", 2),
+    ] = Field(
+        description="A row of efficiencies for each head, one for each discharge [share or %].",
+        examples=[[[0.70, 0.84, 0.83], [0.72, 0.88, 0.87]]],
+    )
+
+    def values_fit_together(self) -> Iterable[Finding]:
+        """Rising heads and discharges, and a value for each pair of them."""
+        for key in ("heads", "discharges"):
+            numbers = getattr(self, key)
+            for index in range(1, len(numbers)):
+                if numbers[index] <= numbers[index - 1]:
+                    yield (key, index), "not above the one before; sort them, each one once"
+        if len(self.values) != len(self.heads):
+            yield ("values",), f"has {len(self.values)} rows; write {len(self.heads)}, one a head"
+        for index, row in enumerate(self.values):
+            if len(row) != len(self.discharges):
+                yield (
+                    ("values", index),
+                    f"has {len(row)} values; write {len(self.discharges)}, one for each discharge",
+                )
+
+
+def _curve_or_table(written: Any, handler: ValidatorFunctionWrapHandler) -> Any:
+    """A block is a table over heads; anything else a curve."""
+    if isinstance(written, Mapping | EfficiencyTable):
+        return EfficiencyTable.model_validate(written)
+    return _CURVE.read(written)  # and not by a handler, whose paths would name the alternatives
 
 
 class TurbineGroup(Block):
@@ -111,10 +171,13 @@ class TurbineGroup(Block):
         "moment [share or %]; by type if left out.",
         examples=["20 %"],
     )
-    efficiency: EfficiencyCurve | None = Field(
+    efficiency: (
+        Annotated[EfficiencyCurve | EfficiencyTable, WrapValidator(_curve_or_table)] | None
+    ) = Field(
         default=None,
         description="Pairs of share of full discharge at the head of the moment [share or %] and "
-        "turbine efficiency [share or %], or the word typical; typical of the type if left out.",
+        "turbine efficiency [share or %], or a table over heads, or the word typical; typical of "
+        "the type if left out.",
         examples=[[[0.2, 0.71], [0.6, 0.9], [1.0, 0.89]]],
     )
     jets: Annotated[int, Whole(1, 6)] | None = Field(
@@ -150,6 +213,7 @@ class TurbineGroup(Block):
                 "unit_capacity: 125 kW, or both",
             )
         yield from _branch_findings(written)
+        yield from _table_findings(named, written)
         if "jets" in named and written.get("type") not in ("pelton", "turgo"):
             yield ("jets",), "only pelton and turgo units have jets; take the key out"
         if written.get("type") != "other":
@@ -165,6 +229,20 @@ class TurbineGroup(Block):
                 ("minimum_discharge",),
                 "type other has no usual minimum discharge; write for example "
                 "minimum_discharge: 20 %",
+            )
+
+
+def _table_findings(named: AbstractSet[str], written: Mapping[str, Any]) -> Iterable[Finding]:
+    """What an efficiency over heads needs and excludes."""
+    if not isinstance(written.get("efficiency"), Mapping):
+        return
+    if "rated_discharge" not in named:
+        yield ("rated_discharge",), "is missing; a table over heads needs it: 6.2 m3/s"
+    for key in ("jets", "waterway"):
+        if written.get(key):
+            yield (
+                (key,),
+                f"'{key}' is read with a curve only; take it into the table, or out of the file",
             )
 
 
