@@ -303,16 +303,37 @@ def estimate_energy(scheme: Scheme) -> Estimate:
     Raises ComputationError where no hydrological year can be used; the message says which months
     are short of values.
     """
-    if scheme.dates is None:
-        cells = cells_of_table(scheme.discharge, scheme.rules.season_of_month)
-        return _run(scheme, cells, {})
-    calendar = Calendar.of(scheme.dates, scheme.year_start_month)
-    months = count_months(calendar, ~np.isnan(scheme.discharge))
-    used, left_out = usable_years(months, scheme.minimum_month_coverage, scheme.year_start_month)
+    cells, left_out = condensed(
+        scheme.dates,
+        scheme.discharge,
+        scheme.rules.season_of_month,
+        scheme.year_start_month,
+        scheme.minimum_month_coverage,
+    )
+    return _run(scheme, cells, left_out)
+
+
+def condensed(
+    dates: NDArray[np.datetime64] | None,
+    discharge: Floats,
+    season_of_month: NDArray[np.int64],
+    year_start_month: int,
+    minimum_month_coverage: float,
+) -> tuple[Cells, dict[str, str]]:
+    """The states of the river over the years that can be used, and why others cannot.
+
+    The arguments are as in `Scheme`; season_of_month as in `WaterRules`, (12,).
+
+    Returns the cells and {name of the year: reason}. Raises NoUsableYearError.
+    """
+    if dates is None:
+        return cells_of_table(discharge, season_of_month), {}
+    calendar = Calendar.of(dates, year_start_month)
+    months = count_months(calendar, ~np.isnan(discharge))
+    used, left_out = usable_years(months, minimum_month_coverage, year_start_month)
     if not used.any():
         raise NoUsableYearError(left_out)
-    cells = condense(scheme.discharge, calendar, months, used, scheme.rules.season_of_month)
-    return _run(scheme, cells, left_out)
+    return condense(discharge, calendar, months, used, season_of_month), left_out
 
 
 def _run(scheme: Scheme, cells: Cells, left_out: dict[str, str]) -> Estimate:

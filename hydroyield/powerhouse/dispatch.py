@@ -74,6 +74,11 @@ class DispatchTable:
         self._jumps = self._find_jumps()
         self._width = self._values.shape[1]
 
+    @property
+    def columns(self) -> int:
+        """Steps from no water to the open plant, of units that scale alike with head."""
+        return int(self._columns[0])
+
     # --- what the table is laid on -------------------------------------------------------------
 
     @property

@@ -1,0 +1,1 @@
+"""How many units, of what size: options, how they are ranked, and which differences are real."""
