@@ -5,11 +5,14 @@ from __future__ import annotations
 import json
 import sys
 from pathlib import Path
-from typing import Annotated
+from typing import TYPE_CHECKING, Annotated
 
 import typer
 
 import hydroyield
+
+if TYPE_CHECKING:
+    from hydroyield.site.reading import SiteDescription
 
 app = typer.Typer(
     name="hydroyield",
@@ -176,6 +179,83 @@ def record(
         print_record_summary(found)
         if out is not None:
             typer.echo(f"\nWritten to {out}; open {out / 'report.html'}")
+
+
+@app.command()
+def compare(
+    site: SiteArgument,
+    out: Annotated[
+        Path | None,
+        typer.Option("--out", metavar="FOLDER", help="Folder to write; needed without --json."),
+    ] = None,
+    as_json: JsonOption = False,
+    write: Annotated[
+        int | None,
+        typer.Option(
+            "--write",
+            metavar="OPTION",
+            help="Write this option as a site file of its own into FOLDER, and compare nothing.",
+        ),
+    ] = None,
+    quiet: Annotated[
+        bool, typer.Option("--quiet", help="Print nothing but faults; write the folder.")
+    ] = False,
+) -> None:
+    """Compute the options of a site and compare them: how many units, of what size and type."""
+    from hydroyield import jobs
+    from hydroyield.report.comparison_files import (
+        comparison_figure_count,
+        comparison_text,
+        write_comparison_page,
+        write_comparison_tables,
+    )
+    from hydroyield.report.comparison_summary import print_comparison
+    from hydroyield.report.folder import check_folder, write_folder
+    from hydroyield.report.progress import progress
+    from hydroyield.site.assembly import read_site
+
+    if out is None and (write is not None or not as_json):
+        raise typer.BadParameter("name the folder to write: --out FOLDER (or --json)")
+    if out is not None:
+        check_folder(out)
+    described = read_site(site)
+    if write is not None:
+        assert out is not None  # refused above
+        _write_option(described, write, out, quiet=quiet)
+        return
+    figures = 0 if as_json else comparison_figure_count()
+    with progress(jobs.option_count(described) + figures, quiet=quiet or as_json) as steps:
+        found = jobs.compare(described, lambda: steps.done("options"))
+
+        def fill(folder: Path) -> None:
+            write_comparison_tables(found, folder)
+            if not as_json:
+                write_comparison_page(found, folder, steps)
+
+        if out is not None:
+            write_folder(out, fill)
+    if as_json:
+        sys.stdout.write(comparison_text(found))
+    elif out is not None and not quiet:
+        print_comparison(found)
+        typer.echo(f"\nWritten to {out}; open {out / 'report.html'}")
+
+
+def _write_option(site: SiteDescription, number: int, out: Path, *, quiet: bool) -> None:
+    """A folder in which one option is a site of its own."""
+    from hydroyield import jobs
+    from hydroyield.report.folder import write_folder
+
+    files = jobs.write_option(site, number)
+
+    def fill(folder: Path) -> None:
+        for name, content in files.items():
+            (folder / name).parent.mkdir(parents=True, exist_ok=True)
+            (folder / name).write_bytes(content)
+
+    write_folder(out, fill)
+    if not quiet:
+        typer.echo(f"Written to {out}; try hydroyield estimate {out / 'site.yaml'} --out results")
 
 
 def _area(text: str) -> float:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, fields
 from pathlib import Path
 
 from hydroyield.checks import Check
+from hydroyield.comparison.compared import PlantComparison, compare_plants
+from hydroyield.comparison.writing import option_files
 from hydroyield.energy import Estimate, estimate_energy
 from hydroyield.energy.estimate import NoUsableYearError
 from hydroyield.errors import Fault, RecordError, SiteFileError
@@ -22,6 +24,7 @@ from hydroyield.record.joining import read_records
 from hydroyield.record.options import RecordOptions
 from hydroyield.river.views import RiverViews
 from hydroyield.site.assembly import Assembled, assemble, read_site
+from hydroyield.site.option_assembly import most_combinations
 from hydroyield.site.reading import SiteDescription
 from hydroyield.site.river_assembly import (
     RiverAtSite,
@@ -205,6 +208,58 @@ def machines(site: SiteDescription) -> list[Suitability]:
     Raises SiteFileError or RecordError with every fault found.
     """
     return suitable_machines(estimate(site))
+
+
+# --- options ------------------------------------------------------------------------------------
+
+
+def compare(site: SiteDescription, done: Callable[[], None] = lambda: None) -> PlantComparison:
+    """The options of a site, each computed as fully as an estimate, held against each other.
+
+    site : from `hydroyield.read_site`, with a block `options`
+    done : called after each option
+
+    Raises SiteFileError or RecordError with every fault found.
+    """
+    _needs_options(site)
+    record, reference = _record(site), _reference(site)
+    river = river_at_site(site, record, reference)
+    try:
+        return compare_plants(site, river, (record, reference), done)
+    except NoUsableYearError as error:
+        assert record is not None  # a duration table has no years that could be short
+        raise RecordError([_no_usable_year(site, error, record)]) from None
+
+
+def option_count(site: SiteDescription) -> int:
+    """How many combinations the options of a site make, at most.
+
+    Raises SiteFileError where the site file has no options.
+    """
+    _needs_options(site)
+    return most_combinations(site)
+
+
+def write_option(site: SiteDescription, number: int) -> dict[str, bytes]:
+    """The files of a folder in which an option is a site of its own: {name: content}.
+
+    number : of the option, from 1
+
+    Raises SiteFileError where there is no such option, RecordError where a record is at fault.
+    """
+    _needs_options(site)
+    record, reference = _record(site), _reference(site)
+    river = river_at_site(site, record, reference)
+    return option_files(site, river, number)
+
+
+def _needs_options(site: SiteDescription) -> None:
+    if site.model.options is None:
+        message = (
+            "no options to compare; write a block such as options: {unit_counts: [1, 2], "
+            "exceedances: [20, 30, 40]}"
+        )
+        raise SiteFileError([site.fault(("options",), message)])
 
 
 # --- a record alone -------------------------------------------------------------------------------

@@ -92,16 +92,25 @@ UNIT_OF_SUFFIX = {
     "_mwh": "MWh", "_kwh": "kWh", "_kw": "kW", "_m3s": "m3/s", "_m": "m", "_m2": "m2",
     "_km2": "km2", "_percent": "%", "_kg_m3": "kg/m3", "_m_s2": "m/s2", "_share": "1",
     "_hours": "h", "_days": "d", "_factor": "1", "_index": "1", "_minutes": "min", "_m3": "m3",
-    "_years": "a",
+    "_years": "a", "_kwh_per_kw": "kWh/kW", "_per_kwh": "1/kWh",
 }  # fmt: skip
 # counts, and what has its unit in the message beside it
 WITHOUT_SUFFIX = {
-    "correlation", "count", "date", "days", "days_at_residual_flow", "filled", "intercept",
-    "limit", "low_flow_count", "low_flow_start_month", "month", "rows_read", "rows_used", "slope",
+    "best_option", "capital_cost", "correlation", "count", "critical_standard_errors", "date",
+    "days", "days_at_residual_flow", "filled", "first_option", "indistinguishable_options",
+    "intercept", "limit", "low_flow_count", "low_flow_start_month", "month", "net_present_value",
+    "on_frontier", "option", "rows_read", "rows_used", "second_option", "slope", "unit_count",
     "value", "year", "year_start_month",
 }  # fmt: skip
 # labels and settings, no quantities: version of the format, seed, counts by a reason in words
 NO_QUANTITY = {"format", "seed", "rows_dropped", "first_lines_dropped", "flags"}
+
+
+TEXT_COLUMNS = {"split", "type", "notes", "reason"}
+OPTIONS = """
+options: {unit_counts: [1, 2], exceedances: [20, 40]}
+cost: {fixed: 100000, per_kw: 2000, energy_price: 0.12, life: 30, discount_rate: 4 %}
+"""
 
 
 def has_unit(name: str) -> bool:
@@ -130,14 +139,18 @@ def numeric_names(content: Any, name: str = "") -> Iterator[str]:
 def names_in_files(tmp_path_factory: pytest.TempPathFactory) -> set[str]:
     """Numeric keys of result.json and columns of the tables, of a site with rules by month."""
     site = twin_sites.several_flow_rules(tmp_path_factory.mktemp("site"))
-    out = site.parent / "out"
-    said = CliRunner().invoke(app, ["estimate", str(site), "--out", str(out), "--json"])
-    assert said.exit_code == 0, said.output
-    names = set(numeric_names(json.loads((out / "result.json").read_text("utf-8"))))
-    for path in out.rglob("*.csv"):
+    site.write_text(site.read_text() + OPTIONS)
+    folder = site.parent / "out"
+    names: set[str] = set()
+    for command in ("estimate", "compare"):
+        out = folder / command
+        said = CliRunner().invoke(app, [command, str(site), "--out", str(out), "--json"])
+        assert said.exit_code == 0, said.output
+        names |= set(numeric_names(json.loads((out / "result.json").read_text("utf-8"))))
+    for path in folder.rglob("*.csv"):
         with open(path, newline="") as file:
             names |= set(next(csv.reader(file)))
-    return names - NO_QUANTITY
+    return names - NO_QUANTITY - TEXT_COLUMNS
 
 
 def test_names_in_files_end_with_their_unit(names_in_files: set[str]) -> None:

@@ -25,8 +25,9 @@ def blocks(language: str) -> list[str]:
 
 
 def test_the_site_file_shown_is_valid() -> None:
-    (text,) = blocks("yaml")
+    text, options = blocks("yaml")
     assert read_site_text(text).name == yaml.safe_load(text)["site"]["name"]
+    assert read_site_text(text + options).model.options is not None
 
 
 def test_the_summary_shown_is_printed() -> None:

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from hydroyield.report.drawn import DrawnFigure
     from hydroyield.report.figures import FigureSpec
     from hydroyield.report.figures.facts import Facts
+    from hydroyield.report.figures.options import OptionFacts
 
 RESULT, CURVES, POWER_DURATION = "result.json", "curves.csv", "power_duration.csv"
 STANDING = "standing.csv"
@@ -53,17 +54,21 @@ def write_page(estimate: SiteEstimate, folder: Path, steps: Steps) -> None:
     from hydroyield.report.page import page
 
     facts = Facts(estimate)
-    drawn = _write_figures(figures_of(facts), facts, folder, steps)
+    drawn = write_figures_of(figures_of(facts), facts, folder, steps)
     (folder / PAGE).write_text(page(estimate, drawn), "utf-8")
 
 
-def _write_figures(
-    specs: Sequence[FigureSpec], facts: Facts | RiverViews, folder: Path, steps: Steps
+def write_figures_of(
+    specs: Sequence[FigureSpec],
+    facts: Facts | RiverViews | OptionFacts,
+    folder: Path,
+    steps: Steps,
 ) -> list[DrawnFigure]:
+    """Write figures into the folder for them, and return them for a page."""
     from hydroyield.report.drawn import DrawnFigure
     from hydroyield.report.figures import figure_svg
 
-    (folder / FIGURES_FOLDER).mkdir()
+    (folder / FIGURES_FOLDER).mkdir(exist_ok=True)
     drawn = []
     for spec in specs:
         svg = figure_svg(spec, facts)
@@ -89,7 +94,7 @@ def write_record_page(gauge: GaugeRecord, folder: Path, steps: Steps) -> None:
     from hydroyield.report.figures import RECORD_FIGURES
     from hydroyield.report.record_page import record_page
 
-    drawn = _write_figures(RECORD_FIGURES, gauge.views, folder, steps)
+    drawn = write_figures_of(RECORD_FIGURES, gauge.views, folder, steps)
     (folder / PAGE).write_text(record_page(gauge, drawn), "utf-8")
 
 

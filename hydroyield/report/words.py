@@ -49,6 +49,11 @@ def ranked_years(estimate: SiteEstimate) -> list[tuple[str, float]]:
     return sorted(estimate.yearly_energy_mwh.items(), key=lambda item: item[1])
 
 
+def months_in_turn(numbers: tuple[int, ...]) -> str:
+    """A run of months by its first and last, over the turn of the year where need be."""
+    return f"{MONTH_NAMES[numbers[0] - 1]} to {MONTH_NAMES[numbers[-1] - 1]}"
+
+
 def months(numbers: tuple[int, ...] | None) -> str:
     """Months in words; a run of months as a range."""
     if numbers is None or len(numbers) == len(MONTH_NAMES):

@@ -8,6 +8,7 @@ from Python is in the unit that the field states, like a number in a site file.
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import BeforeValidator, Field
@@ -16,9 +17,10 @@ from hydroyield.quantities import ANGLE, LENGTH, TEMPERATURE
 from hydroyield.site.baseline_models import Baseline
 from hydroyield.site.blocks import Block
 from hydroyield.site.discharge_models import Discharge
-from hydroyield.site.faults import flow, shown
+from hydroyield.site.faults import Finding, flow, shown
 from hydroyield.site.fields import ListOf, Quantity, Text, scalar_text
 from hydroyield.site.head_models import Head
+from hydroyield.site.option_models import Cost, Options
 from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
 from hydroyield.site.river_models import Abstraction, ConstantRule, Rule
 from hydroyield.site.waterway_models import WaterwayLoss
@@ -107,3 +109,26 @@ class SiteFile(Block):
         "nothing is compared if left out.",
         examples=[Baseline.example],
     )
+    options: Options | None = Field(
+        default=None,
+        description="Plants that `hydroyield compare` tries; a comparison needs it, and other "
+        "commands leave it aside; nothing is compared if left out.",
+        examples=[Options.example],
+    )
+    cost: Cost | None = Field(
+        default=None,
+        description="Costs and prices for a comparison; no money is spoken of if left out.",
+        examples=[Cost.example],
+    )
+
+    def values_fit_together(self) -> Iterable[Finding]:
+        """Diameters are tried on a pipe."""
+        if self.options is None or not self.options.pipe_diameters:
+            return
+        pipes = sum(loss.pipe is not None for loss in self.waterway)
+        if pipes != 1:
+            yield (
+                ("options", "pipe_diameters"),
+                f"the waterway has {pipes or 'no'} pipe{'s' if pipes > 1 else ''}; diameters are "
+                "tried on the one pipe of the waterway",
+            )

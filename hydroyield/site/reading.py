@@ -31,6 +31,7 @@ class SiteDescription:
     model : what the file says, in SI
     lines : line of each key and list entry
     sha256 : of the bytes of the file, in hexadecimal digits
+    text : of the file
     """
 
     path: Path
@@ -39,6 +40,7 @@ class SiteDescription:
     model: SiteFile
     sha256: str
     lines: Mapping[KeyPath, int] = field(repr=False)
+    text: str = field(default="", repr=False)
 
     @property
     def name(self) -> str:
@@ -113,6 +115,7 @@ def read_site_text(
         model=model,
         sha256=sha256 or hashlib.sha256(text.encode("utf-8")).hexdigest(),
         lines=document.lines,
+        text=text,
     )
 
 

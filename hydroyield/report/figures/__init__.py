@@ -16,8 +16,9 @@ from typing import TYPE_CHECKING, Any
 from xml.sax.saxutils import escape
 
 from hydroyield.energy import Estimate
-from hydroyield.report.figures import energy, gauge, heads, plant, river, style
+from hydroyield.report.figures import energy, gauge, heads, options, plant, river, style
 from hydroyield.report.figures.facts import Facts, as_facts
+from hydroyield.report.figures.options import OptionFacts
 from hydroyield.river.views import RiverViews
 
 if TYPE_CHECKING:
@@ -58,7 +59,7 @@ class FigureSpec:
     heights: Callable[[Any], tuple[float, ...]] | None = None
     needs_days: bool = False
 
-    def alt_text(self, estimate: Estimate | Facts | RiverViews) -> str:
+    def alt_text(self, estimate: Estimate | Facts | RiverViews | OptionFacts) -> str:
         """One or two sentences with the numbers, for those who cannot see the figure."""
         return self.alt(self.part(as_facts(estimate)))
 
@@ -199,6 +200,44 @@ FIGURES: tuple[FigureSpec, ...] = (
 )
 
 
+WIDE_KEY = 1.75  # [in], right of the axes
+
+COMPARISON_FIGURES: tuple[FigureSpec, ...] = (
+    FigureSpec(
+        "options_energy",
+        "Energy and capacity factor of the options",
+        lambda facts: facts,
+        options.draw_energy,
+        options.alt_energy,
+        size=(7.6, 6.0),
+        right=WIDE_KEY,
+        heights=lambda _: (1.6, 1.0),
+    ),
+    FigureSpec(
+        "options_marginal",
+        "What a further kW brings",
+        lambda facts: facts,
+        options.draw_marginal,
+        options.alt_marginal,
+        right=WIDE_KEY,
+    ),
+    FigureSpec(
+        "options_frontier",
+        "Options that no other beats",
+        lambda facts: facts,
+        options.draw_frontier,
+        options.alt_frontier,
+    ),
+    FigureSpec(
+        "options_power",
+        "Power duration curves of the chosen options",
+        lambda facts: facts,
+        options.draw_chosen,
+        options.alt_chosen,
+    ),
+)
+
+
 def figures_of(estimate: Estimate | Facts) -> list[FigureSpec]:
     """The figures that an estimate has; without days those of days are missing."""
     has_days = as_facts(estimate).estimate.has_years
@@ -212,7 +251,7 @@ def write_figures(estimate: Estimate | Facts, folder: Path) -> None:
         (folder / f"{spec.name}.svg").write_text(figure_svg(spec, facts), "utf-8")
 
 
-def figure_svg(spec: FigureSpec, estimate: Estimate | Facts | RiverViews) -> str:
+def figure_svg(spec: FigureSpec, estimate: Estimate | Facts | RiverViews | OptionFacts) -> str:
     """A figure as the text of an SVG element, the same on every run.
 
     It can stand in a file of its own or within a page: ids carry the name of the figure, and
@@ -227,7 +266,7 @@ def figure_svg(spec: FigureSpec, estimate: Estimate | Facts | RiverViews) -> str
     return _dressed(text.getvalue(), spec, spec.alt_text(facts))
 
 
-def draw_figure(spec: FigureSpec, estimate: Estimate | Facts | RiverViews) -> Figure:
+def draw_figure(spec: FigureSpec, estimate: Estimate | Facts | RiverViews | OptionFacts) -> Figure:
     """Draw a figure; to be called within `style.drawing`."""
     from matplotlib.backends.backend_svg import FigureCanvasSVG
     from matplotlib.figure import Figure

@@ -25,6 +25,7 @@ from hydroyield.report.figures.data import (
     thinned,
     typical_years,
 )
+from hydroyield.report.figures.options import OptionFacts
 from hydroyield.river.views import RiverViews
 from hydroyield.river.years import MONTH_NAMES, Calendar, months_in_order, span
 
@@ -242,11 +243,13 @@ def as_facts(estimate: Estimate | Facts) -> Facts: ...
 
 
 @overload
-def as_facts(estimate: RiverViews) -> RiverViews: ...
+def as_facts(estimate: RiverViews | OptionFacts) -> RiverViews | OptionFacts: ...
 
 
-def as_facts(estimate: Estimate | Facts | RiverViews) -> Facts | RiverViews:
-    """Facts of an estimate; facts, and the views of a record alone, stay what they are."""
+def as_facts(
+    estimate: Estimate | Facts | RiverViews | OptionFacts,
+) -> Facts | RiverViews | OptionFacts:
+    """Facts of an estimate; facts, and what a record or options show, stay what they are."""
     return Facts(estimate) if isinstance(estimate, Estimate) else estimate
 
 

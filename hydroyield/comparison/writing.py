@@ -1,0 +1,50 @@
+"""An option as a site of its own: a site file that runs where it lies, with its records."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from pathlib import Path
+
+from hydroyield.errors import SiteFileError
+from hydroyield.site.assembly import read_site
+from hydroyield.site.option_assembly import combinations_of, lacking, machines_to_try, turbines_of
+from hydroyield.site.option_writing import site_text_with, turbines_text
+from hydroyield.site.reading import SiteDescription
+from hydroyield.site.river_assembly import RiverAtSite
+
+SITE_FILE = "site.yaml"
+
+
+def option_files(site: SiteDescription, river: RiverAtSite, number: int) -> dict[str, bytes]:
+    """{name: content} of a folder for one option.
+
+    river : at the site
+    number : of the option, from 1
+
+    Raises SiteFileError where there is no such option.
+    """
+    tried = combinations_of(site, river.valid_discharge)
+    if not 1 <= number <= len(tried):
+        message = f"there is no option {number}; write one from 1 to {len(tried)}"
+        raise SiteFileError([site.fault(("options",), message)])
+    combination = tried[number - 1]
+    machine = machines_to_try(site)[combination.machine]
+    if reason := lacking(machine):
+        message = f"option {number} is no plant: {reason}"
+        raise SiteFileError([site.fault(("options",), message)])
+    block = turbines_text(turbines_of(machine, combination))
+    text = site_text_with(site.text, block, combination.pipe_diameter)
+    files = {SITE_FILE: text.encode("utf-8")}
+    for path in _files_named(site):
+        files[path.relative_to(site.folder).as_posix()] = path.read_bytes()
+    return files
+
+
+def _files_named(site: SiteDescription) -> Iterator[Path]:
+    """Every file that a site file names: its records, and those of the plant it replaces."""
+    yield from (*site.record_paths, *site.reference_paths)
+    baseline = site.model.baseline
+    if baseline is not None and baseline.site is not None:
+        old = site.folder / baseline.site
+        yield old
+        yield from _files_named(read_site(old))
