@@ -7,9 +7,11 @@ from __future__ import annotations
 
 import os
 import sys
+from typing import NoReturn
 
 from hydroyield.errors import HydroyieldError, InputError
 
+INTERRUPTED = 130  # as shells say it
 DEBUG = "HYDROYIELD_DEBUG"  # set it to see the traceback of a fault of ours
 
 
@@ -23,8 +25,11 @@ def main() -> None:
         print(error, file=sys.stderr)
         sys.exit(2 if isinstance(error, InputError) else 1)
     except KeyboardInterrupt:
-        print("interrupted; nothing was written", file=sys.stderr)
-        sys.exit(130)
+        _interrupted()
+    except SystemExit as end:
+        if end.code == INTERRUPTED:  # the command line library has caught it
+            _interrupted()
+        raise
     except BrokenPipeError:  # the reader of a pipe has seen enough
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     except Exception as error:
@@ -36,6 +41,11 @@ def main() -> None:
             file=sys.stderr,
         )
         sys.exit(1)
+
+
+def _interrupted() -> NoReturn:
+    print("interrupted; nothing was written", file=sys.stderr)
+    sys.exit(INTERRUPTED)
 
 
 if __name__ == "__main__":

@@ -3,8 +3,11 @@
 from __future__ import annotations
 
 import json
+import os
+import signal
 import subprocess
 import sys
+import time
 from pathlib import Path
 
 import numpy as np
@@ -365,3 +368,26 @@ def test_the_command_writes_tables_page_and_option(tmp_path: Path) -> None:
     assert [row["option"] for row in as_json["options"]] == table["option"].tolist()
     assert run("compare", path).returncode == 2
     assert run("compare", path, "--out", tmp_path).returncode == 2
+
+
+@pytest.mark.slow
+@pytest.mark.skipif(not Path("/proc").exists(), reason="looks at the children of a process")
+def test_an_interruption_leaves_nothing_behind(tmp_path: Path) -> None:
+    """The signal comes when a worker has started, which is before 200 options are done."""
+    sizes = ", ".join(f"{0.2 + 0.05 * n:.2f}" for n in range(100))
+    path = write_site(tmp_path, river(), f"unit_counts: [3, 4]\nmean_flow_multiples: [{sizes}]")
+    command = [sys.executable, "-m", "hydroyield", "compare", path, "--out", tmp_path / "out"]
+    before = set(tmp_path.iterdir())
+    running = subprocess.Popen(
+        command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, start_new_session=True
+    )
+    children = Path(f"/proc/{running.pid}/task/{running.pid}/children")
+    end = time.monotonic() + 60
+    while children.exists() and not children.read_text().strip() and time.monotonic() < end:
+        time.sleep(0.05)
+    os.killpg(running.pid, signal.SIGINT)
+    said, complained = running.communicate(timeout=60)
+    assert (running.returncode, said) == (130, "")
+    assert complained.endswith("interrupted; nothing was written\n")
+    assert "Traceback" not in complained
+    assert set(tmp_path.iterdir()) == before

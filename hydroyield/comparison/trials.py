@@ -7,8 +7,10 @@ are the same either way.
 from __future__ import annotations
 
 import os
+import signal
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
+from contextlib import contextmanager
 from dataclasses import dataclass
 
 from hydroyield.energy import Estimate, estimate_energy
@@ -144,7 +146,9 @@ def _shared(
     pool = ProcessPoolExecutor(workers, initializer=_start_worker, initargs=(trial,))
     try:
         numbers = range(2, len(combinations) + 1)
-        for each in pool.map(_in_worker, numbers, combinations[1:], chunksize=CHUNK):
+        with _interrupts_wait():
+            results = pool.map(_in_worker, numbers, combinations[1:], chunksize=CHUNK)
+        for each in results:
             found.append(each)
             done()
     except BaseException:
@@ -152,3 +156,16 @@ def _shared(
         raise
     pool.shutdown()
     return found
+
+
+@contextmanager
+def _interrupts_wait() -> Iterator[None]:
+    """Hold interrupts back while processes start: they inherit it, and this one stops them."""
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
