@@ -401,8 +401,8 @@ class Water:
 
 
 def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
-    """The largest of the rules, never more than the inflow."""
-    largest = 0.0
+    """The largest, the sum or the first of the rules that hold, never more than the inflow."""
+    values = [0.0]
     for rule in plant.site.get("environmental_flow") or []:
         kind = rule["rule"]
         if month not in rule.get("months", range(1, 13)):
@@ -423,8 +423,11 @@ def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
             value = [kept for inflow, kept in rule["steps"] if inflow <= discharge][-1]
         else:
             raise ValueError(f"rule {kind} is not known")
-        largest = max(largest, value)
-    return min(discharge, largest)
+        values.append(value)
+    way = plant.site.get("environmental_flow_combination", "largest")
+    if way == "largest":
+        return min(discharge, max(values))
+    return min(discharge, sum(values) if way == "sum" else [*values[1:], 0.0][0])
 
 
 def share_water(plant: Plant, month: int, discharge: float) -> Water:

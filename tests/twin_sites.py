@@ -594,6 +594,47 @@ electrical: {generator_efficiency: 0.93}
     return path
 
 
+def added_rules(folder: Path) -> Path:
+    """Rules that add up, and together ask for more than half of what comes in summer."""
+    return _combined(folder, "sum")
+
+
+def first_of_rules(folder: Path) -> Path:
+    """In each month the first rule that holds."""
+    return _combined(folder, "priority")
+
+
+def _combined(folder: Path, way: str) -> Path:
+    path = write_site(
+        folder,
+        f"""\
+format: 1
+site: {{name: Teasel Sluice}}
+discharge:
+  record: {{file: flow.csv, unit: m3/s}}
+environmental_flow_combination: {way}
+environmental_flow:
+  - {{rule: inflow_share, share: 0.3, above: 0.5, months: [5, 6, 7, 8, 9]}}
+  - {{rule: constant, discharge: 0.4, months: [3, 4, 5, 6]}}
+  - {{rule: steps, steps: [[0, 0.2], [2.5, 0.5]], months: [1, 2, 3, 6, 7]}}
+  - {{rule: exceedance, percent: 90}}
+abstractions:
+  - {{name: fish pass, discharge: 0.3, counts_as_environmental_flow: true}}
+head:
+  headwater: {{level: 58.0}}
+  tailwater: {{table: [[0, 52.1], [30, 53.4]]}}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 3.0
+    rated_head: 5.6
+electrical: {{generator_efficiency: 0.93}}
+""",
+    )
+    write_record(folder / "flow.csv", 36, "1999-10-01", "2002-09-30", 3.0, 0.9)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -645,6 +686,8 @@ SITES: dict[str, Callable[[Path], Path]] = {
         calendar_years_and_transfer,
         generator_load_curve,
         rules_of_permits,
+        added_rules,
+        first_of_rules,
         penstock_and_rack,
         water_joining_below,
         outages,

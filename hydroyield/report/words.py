@@ -22,6 +22,11 @@ def energy(mwh: float) -> str:
     return f"{rounded(mwh)} MWh"
 
 
+def signed(value: float) -> str:
+    """A number to three significant figures, a minus in front where it is negative."""
+    return ("-" if value < 0 else "") + rounded(abs(value))
+
+
 def head(metres: float) -> str:
     """Head to 0.01 m under 10 m, else to three significant figures."""
     return f"{metres:.2f} m" if abs(metres) < 10 else f"{rounded(metres)} m"
@@ -61,6 +66,13 @@ def months(numbers: tuple[int, ...] | None) -> str:
 
 
 # --- what the estimate rests on -------------------------------------------------------------------
+
+
+TOGETHER = {
+    "largest": ", the largest of",
+    "sum": ", the sum of",
+    "priority": ", the first that holds of",
+}
 
 
 def environmental_flow(model: SiteFile) -> list[str]:

@@ -140,8 +140,8 @@ def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
     """The rules of a site in numbers; statistics are those of all valid days at the site."""
     fixed: list[list[float]] = []
     by_inflow: list[InflowRule] = []
-    for rule in model.environmental_flow:
-        months = rule.months or ALL_YEAR
+    held = rule_months(model)
+    for rule, months in zip(model.environmental_flow, held, strict=True):
         if rule.rule == "inflow_share":
             most = np.inf if rule.maximum_take is None else rule.maximum_take
             by_inflow.append(InflowShare(rule.share, rule.above, most, months))
@@ -152,7 +152,24 @@ def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
             twelve = _twelve(rule, valid_discharge)
             fixed.append([q if m in months else 0.0 for m, q in enumerate(twelve, 1)])
     racks = waterway_of(model.waterway, model.site).racks_by_month
-    return WaterRules.by_month(fixed, by_inflow, abstractions(model), also=[racks])
+    summed = model.environmental_flow_combination == "sum"
+    return WaterRules.by_month(fixed, by_inflow, abstractions(model), also=[racks], summed=summed)
+
+
+def rule_months(model: SiteFile) -> list[tuple[int, ...]]:
+    """Months in which each rule for the environmental flow counts.
+
+    By priority a rule counts only in months that no rule before it holds in.
+    """
+    named = [rule.months or ALL_YEAR for rule in model.environmental_flow]
+    if model.environmental_flow_combination != "priority":
+        return named
+    taken: set[int] = set()
+    left = []
+    for months in named:
+        left.append(tuple(month for month in months if month not in taken))
+        taken |= set(months)
+    return left
 
 
 def _twelve(rule: Any, valid_discharge: Floats) -> list[float]:

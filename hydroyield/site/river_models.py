@@ -28,6 +28,7 @@ PRESET_NAMES = (
     "tennant_poor",
 )  # those of river.presets, kept here so that reading a site file needs no numbers
 
+Combination = Literal["largest", "sum", "priority"]
 
 _FLOW = Quantity(DISCHARGE, at_least=0)
 
