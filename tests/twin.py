@@ -104,6 +104,14 @@ class Unit:
     efficiency: Callable[[Any], Any] = field(repr=False, compare=False)
     axis: float | None = None  # m
     generator: Callable[[Any], Any] | None = field(default=None, repr=False, compare=False)
+    limit: tuple[tuple[float, float], ...] = ()  # net head [m] and the most it gives [W]
+
+    def most(self, head: Any) -> Any:
+        """The most that the unit may give [W] at a net head [m]."""
+        if not self.limit:
+            return self.capacity
+        heads, powers = zip(*self.limit, strict=True)
+        return np.minimum(self.capacity, np.interp(head, heads, powers))
 
     def terminals(self, shaft: Any) -> Any:
         """Output [W] of what reaches the generator, its efficiency read at the output itself."""
@@ -142,7 +150,7 @@ def unit_output(unit: Unit, opening: Any, head: Any) -> Any:
     """Output [W] at an opening (q / q_full) and a net head [m]."""
     discharge = opening * full_discharge(unit, head)
     shaft = unit.factor * discharge * head * unit.efficiency(opening)
-    return np.minimum(unit.terminals(shaft), unit.capacity)
+    return np.minimum(unit.terminals(shaft), unit.most(head))
 
 
 Head = Callable[[Unit, Any], Any]  # (unit, total discharge) -> net head, 0 where not admissible
@@ -721,6 +729,7 @@ def make_units(plant: Plant) -> list[Unit]:
             curves[i],
             group.get("axis_level"),
             load_curve,
+            tuple((head, 1000 * power) for head, power in group.get("output_limit") or []),
         )
         units += [unit] * group.get("count", 1)
     return units
@@ -759,8 +768,9 @@ def run_units(plant: Plant, units: list[Unit], heads: HeadsOf, offered: float) -
         gross.append(g)
         net.append(h)
         etas.append(eta)
-        outputs.append(min(free_output, unit.capacity))
-        full_power = full_power or free_output >= unit.capacity * (1 - AT_CAPACITY)
+        most = float(unit.most(h))
+        outputs.append(min(free_output, most))
+        full_power = full_power or free_output >= most * (1 - AT_CAPACITY)
     return State([q for _, q in running], gross, net, etas, outputs, full_power)
 
 

@@ -594,6 +594,42 @@ electrical: {generator_efficiency: 0.93}
     return path
 
 
+def output_limited_by_head(folder: Path) -> Path:
+    """A generator that must give less at low heads and at very high ones; head falls in floods."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Yarrow Lock}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.5}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.0], [10, 38.0], [50, 39.9]]}
+waterway:
+  - {loss_coefficient: 0.003}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 5.0
+    rated_head: 3.0
+    unit_capacity: 125
+    output_limit: [[1.5, 28], [2.6, 96], [3.2, 118], [3.7, 112]]
+  - count: 1
+    type: francis
+    rated_discharge: 2.5
+    rated_head: 3.0
+    unit_capacity: 60
+    efficiency: [[0.3, 0.6], [0.6, 0.84], [0.85, 0.9], [1.0, 0.87]]
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 37, "1999-10-01", "2001-09-30", 7.0, 0.9)
+    return path
+
+
 def added_rules(folder: Path) -> Path:
     """Rules that add up, and together ask for more than half of what comes in summer."""
     return _combined(folder, "sum")
@@ -686,6 +722,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         calendar_years_and_transfer,
         generator_load_curve,
         rules_of_permits,
+        output_limited_by_head,
         added_rules,
         first_of_rules,
         penstock_and_rack,

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+import numpy as np
+
 from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.powerhouse import HillChart, UnitGroup, machine_types
@@ -14,6 +16,7 @@ from hydroyield.site.reading import SiteDescription
 
 HEAD_BAND = (0.75, 1.15)  # of rated head, where a curve for one head still holds (common practice)
 LARGEST_SHARE_OUTSIDE = 0.1  # of the energy, made outside that band
+LITTLE_LESS = 1e-3  # share of the capacity, by which a drawn limit may miss it
 OVERSIZED_GENERATOR = 1.1  # of what the turbine gives at its rated point
 
 
@@ -25,6 +28,8 @@ def machine_checks(
         label = f"turbines[{number}] ({group.count} x {group.type})"
         typical = site.model.turbines[number].efficiency in (None, "typical")
         yield _generator(label, group, estimate)
+        if group.output_limit is not None:
+            yield _limit_at_rated_head(label, group)
         yield from _against_type(label, group, typical)
         if isinstance(group.curve, HillChart):
             yield _head_of_chart(label, group.curve, estimate)
@@ -47,6 +52,22 @@ def _generator(label: str, group: UnitGroup, estimate: Estimate) -> Check:
         f"{label}: a capacity of {group.unit_capacity / W_PER_KW:.4g} kW is {ratio:.2f} times what "
         f"the turbine gives at its rated point ({gives / W_PER_KW:.4g} kW); the capacity factor is "
         "then low by choice. Compare rated head, rated discharge and unit capacity.",
+    )
+
+
+def _limit_at_rated_head(label: str, group: UnitGroup) -> Check:
+    """A capacity that the limit by head forbids at rated head makes the capacity factor low."""
+    most = float(group.most_output(np.array(group.rated_head))) / W_PER_KW
+    capacity = group.unit_capacity / W_PER_KW
+    return warn_unless(
+        "output_limit_at_rated_head",
+        most >= capacity * (1 - LITTLE_LESS),
+        most,
+        capacity,
+        f"{label}: the output limit allows the capacity at rated head.",
+        f"{label}: the output limit allows only {most:.4g} kW of the capacity of {capacity:.4g} kW "
+        "at rated head; the capacity factor counts the latter. Compare output_limit and "
+        "unit_capacity.",
     )
 
 

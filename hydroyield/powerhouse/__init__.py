@@ -11,6 +11,7 @@ from hydroyield.powerhouse.units import (
     HillChart,
     JetCurve,
     LoadCurve,
+    OutputLimit,
     Plant,
     UnitGroup,
 )
@@ -26,6 +27,7 @@ __all__ = [
     "MachineType",
     "Operation",
     "Outages",
+    "OutputLimit",
     "Plant",
     "Spread",
     "UnitGroup",

@@ -268,10 +268,10 @@ def _least_at_capacity(
     """
     mask = dispatcher.admissible(state, reach, dispatcher.heads(state, reach))
     bits = (mask[:, None] >> np.arange(len(dispatcher.plant.groups))) & 1
-    of_groups = np.array([g.count * g.unit_capacity for g in dispatcher.plant.groups])
-    capacity = (bits * of_groups).sum(axis=1)
+    capacity = dispatcher.capacity(state, reach, bits)
     full = (dispatcher.discharge_at_capacity(state, reach, bits) <= reach) & (capacity > 0)
-    full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
+    if not dispatcher.limited_by_head:
+        full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
     chosen = np.flatnonzero(full)
     if chosen.size:
         part, running = state[chosen], bits[chosen]
@@ -279,10 +279,12 @@ def _least_at_capacity(
         def short(tried: Floats) -> Floats:
             return dispatcher.discharge_at_capacity(part, tried, running) - tried
 
-        low = np.zeros(chosen.size)
+        found = last_not_below(short, np.zeros(chosen.size), reach[chosen])
+        given = dispatcher.capacity(part, found, running)
+        kept = given >= output[chosen] * (1 - 1e-9)  # where heads limit it is known only now
+        full[chosen] = kept
         turbined, output = turbined.copy(), output.copy()
-        turbined[chosen] = last_not_below(short, low, reach[chosen])
-        output[chosen] = capacity[chosen]
+        turbined[chosen[kept]], output[chosen[kept]] = found[kept], given[kept]
     return turbined, output, full
 
 
@@ -300,7 +302,7 @@ def _some_at_capacity(
         power = dispatcher.plant.terminal_output(
             group, full * heads[line] * share * group.efficiency(share, heads[line])
         )
-        found |= (discharge > 0) & (power >= group.unit_capacity)
+        found |= (discharge > 0) & (power >= group.most_output(heads[line], share))
     return found
 
 

@@ -231,7 +231,8 @@ def _turbines(estimate: SiteEstimate) -> Rows:
         rows.append(
             (
                 f"{group.count} x {group.type}",
-                mark("unit_capacity", f"{rounded(group.unit_capacity / W_PER_KW)} kW"),
+                mark("unit_capacity", f"{rounded(group.unit_capacity / W_PER_KW)} kW")
+                + words.output_limit(group),
                 mark("rated_discharge", words.discharge(group.rated_discharge)),
                 mark("rated_head", words.head(group.rated_head)),
                 words.percent(group.minimum_share),

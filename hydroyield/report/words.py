@@ -6,6 +6,7 @@ from collections.abc import Iterator
 from typing import Any
 
 from hydroyield.jobs import SiteEstimate
+from hydroyield.powerhouse import UnitGroup
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.years import MONTH_NAMES, span
@@ -224,6 +225,17 @@ def waterway(model: SiteFile) -> str:
     for number, group in enumerate(model.turbines):
         losses += [f"each unit of turbines[{number}]: {_loss(loss)}" for loss in group.waterway]
     return "; ".join(losses) or "none stated"
+
+
+def output_limit(group: UnitGroup) -> str:
+    """The limit by head, behind the capacity; "" without one."""
+    limit = group.output_limit
+    if limit is None:
+        return ""
+    ends = " to ".join(
+        f"{rounded(limit.powers[i] / W_PER_KW)} kW at {head(limit.heads[i])}" for i in (0, -1)
+    )
+    return f", limited by head: {ends}"
 
 
 def outages(estimate: SiteEstimate) -> str:

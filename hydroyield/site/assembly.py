@@ -37,6 +37,7 @@ from hydroyield.powerhouse import (
     HillChart,
     JetCurve,
     LoadCurve,
+    OutputLimit,
     Plant,
     machine_types,
 )
@@ -310,6 +311,13 @@ def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve | JetCurve | HillCh
     return curve if group.jets is None else JetCurve(curve, group.jets)
 
 
+def _output_limit(group: TurbineGroup) -> OutputLimit | None:
+    if group.output_limit is None:
+        return None
+    heads, powers = zip(*group.output_limit, strict=True)
+    return OutputLimit(heads, powers)
+
+
 def minimum_share(group: TurbineGroup) -> float:
     """The minimum discharge given, or that of the type, as a share of full discharge."""
     if group.minimum_discharge is None:
@@ -334,6 +342,7 @@ def _plant(
             efficiency_curve(group),
             group.axis_level,
             waterway_of(group.waterway, model.site),
+            _output_limit(group),
         )
         for group in model.turbines
     ]

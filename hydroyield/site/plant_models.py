@@ -62,6 +62,14 @@ _CURVE = Pairs(
 EfficiencyCurve = Annotated[Table | Literal["typical"], _CURVE]
 
 
+_LIMIT = Pairs(
+    Quantity(LENGTH, above=0),
+    Quantity(POWER, above=0),
+    ("net head", "power"),
+    "[[2.0 m, 80 kW], [2.6 m, 125 kW]]",
+)
+
+
 class EfficiencyTable(Block):
     """Efficiency of one unit over net head and discharge, as makers draw it."""
 
@@ -193,6 +201,13 @@ class TurbineGroup(Block):
         "and the unit stands when the tailwater is higher; the head ends at the tailwater if left "
         "out.",
         examples=["98.1 m"],
+    )
+    output_limit: Annotated[Table, _LIMIT] | None = Field(
+        default=None,
+        description="Pairs of net head [m] and the most that one unit gives at it, at the "
+        "generator terminals [kW], linear between them and constant outside; a unit never gives "
+        "more than the lesser of this and unit_capacity. The capacity alone limits if left out.",
+        examples=[[["2.0 m", "80 kW"], ["2.6 m", "125 kW"]]],
     )
     waterway: Annotated[tuple[WaterwayLoss, ...], ListOf(flow(WaterwayLoss.example))] = Field(
         default=(),
