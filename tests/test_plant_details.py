@@ -10,6 +10,7 @@ from scipy.interpolate import PchipInterpolator
 from test_plant_jobs import FALLING, RIVER, UNIT, WEIGHT, check, estimate, ledger
 
 import hydroyield.errors
+from hydroyield.report import words
 
 PCHIP = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])  # of UNIT
 
@@ -60,3 +61,57 @@ def test_a_capacity_that_the_limit_forbids_at_rated_head_is_named(tmp_path: Path
 def test_a_limit_needs_rising_heads(tmp_path: Path) -> None:
     with pytest.raises(hydroyield.errors.SiteFileError, match="sort the rows by rising net head"):
         estimate(tmp_path, turbines=f"\n  {UNIT}, output_limit: [[3 m, 9 kW], [2 m, 8 kW]]}}")
+
+
+# --- outages by dates -----------------------------------------------------------------------------
+
+
+def test_a_window_takes_its_days_of_the_month(tmp_path: Path) -> None:
+    always = estimate(tmp_path)
+    out = estimate(tmp_path, operation="{planned_outage: {dates: [08-10 to 08-19]}}")
+    left = np.array(out.monthly_energy_mwh) / np.array(always.monthly_energy_mwh)
+    assert left == pytest.approx([1.0] * 7 + [21 / 31] + [1.0] * 4)
+    ledger(out)
+    assert check(out, "planned_outage_months").message.startswith(
+        "The planned days fall into August and take"
+    )
+    same = estimate(tmp_path, operation="{planned_outage: {days: 10, months: aug}}")
+    for name in ("planned_outage_months", "unavailability"):
+        assert check(out, name).value == pytest.approx(check(same, name).value)
+
+
+def test_a_standstill_over_the_turn_of_the_year(tmp_path: Path) -> None:
+    always = estimate(tmp_path)
+    out = estimate(tmp_path, operation="{standstill: {dates: 12-22 to 01-05}}")
+    left = np.array(out.monthly_energy_mwh) / np.array(always.monthly_energy_mwh)
+    assert left == pytest.approx([26 / 31] + [1.0] * 10 + [21 / 31])
+    assert words.outages(out) == "all stand 15 days from 22 December to 5 January"
+
+
+def test_the_page_says_when_units_take_turns(tmp_path: Path) -> None:
+    two = f"\n  {UNIT.replace('count: 1', 'count: 2')}}}"
+    dates = "{planned_outage: {dates: [08-10 to 08-19, 3-1 to 3-2]}}"
+    found = words.outages(estimate(tmp_path, turbines=two, operation=dates))
+    assert found == (
+        "one unit after another out of service from 10 August to 19 August and from 1 March to "
+        "2 March"
+    )
+
+
+@pytest.mark.parametrize(
+    ("block", "fault"),
+    [
+        ("planned_outage: {dates: [08-10 until 08-19]}", "is no window of dates; write 08-10 to"),
+        ("planned_outage: {dates: [02-30 to 03-02]}", "02-30 is no day of the year"),
+        ("planned_outage: {dates: [08-10 to 08-19, 08-19 to 08-20]}", "shares days with a window"),
+        ("planned_outage: {dates: [08-10 to 08-19], months: 8}", "'months' is read with days"),
+        ("planned_outage: {dates: [08-10 to 08-19], days: 8}", "'dates' and 'days' exclude"),
+        ("planned_outage: {dates: []}", "the list is empty; write"),
+        ("planned_outage: {months: 8}", "needs one of days, dates"),
+        ("standstill: {days: 8}", "standstill.months: is missing"),
+        ("standstill: {dates: {from: 1}}", "stands where dates belong"),
+    ],
+)
+def test_dates_that_cannot_be_read(tmp_path: Path, block: str, fault: str) -> None:
+    with pytest.raises(hydroyield.errors.SiteFileError, match=fault):
+        estimate(tmp_path, operation=f"{{{block}}}")

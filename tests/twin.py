@@ -880,7 +880,9 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
     planned = operation.get("planned_outage")
     everyone = tuple(range(len(plant.units)))
     chance = 0.0
-    if planned and day.month in planned["months"]:
+    if planned and "dates" in planned:
+        chance = share_in_windows(planned["dates"], day) / len(everyone)
+    elif planned and day.month in planned["months"]:
         year = water_year(plant, day)
         spread = sum(
             calendar.monthrange(y, m)[1]
@@ -890,11 +892,13 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
         chance = planned["days"] / spread
     if chance * len(everyone) > 1:
         raise ValueError("planned outages do not fit into the months named")
-    if rate == 0 and chance == 0:
+    stand = share_in_windows((operation.get("standstill") or {}).get("dates") or [], day)
+    if rate == 0 and chance == 0 and stand == 0:
         return [(1.0, None)]
     cases = [(1 - chance * len(everyone), everyone)]
     cases += [(chance, tuple(i for i in everyone if i != out)) for out in everyone]
-    result: list[tuple[float, tuple[int, ...] | None]] = []
+    result: list[tuple[float, tuple[int, ...] | None]] = [(stand, ())] if stand else []
+    cases = [(probability * (1 - stand), left) for probability, left in cases]
     for probability, left in cases:
         for up in itertools.product([True, False], repeat=len(left)):
             share = math.prod(1 - rate if u else rate for u in up)
@@ -902,6 +906,19 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
                 kept = tuple(i for i, u in zip(left, up, strict=True) if u)
                 result.append((probability * share, kept))
     return result
+
+
+def share_in_windows(windows: list[str], day: datetime.date) -> float:
+    """The share of the days of this day's month that lie in windows "MM-DD to MM-DD"."""
+    length = calendar.monthrange(day.year, day.month)[1]
+    within = 0
+    for number in range(1, length + 1):
+        name = f"{day.month:02d}-{number:02d}"
+        for window in windows:
+            first, last = window.split(" to ")
+            inside = first <= name <= last if first <= last else name >= first or name <= last
+            within += inside
+    return within / length
 
 
 # ---------------------------------------------------------------- years

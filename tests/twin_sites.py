@@ -630,6 +630,34 @@ electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
     return path
 
 
+def outages_by_dates(folder: Path) -> Path:
+    """Two units that take turns in a window of late winter, and a standstill over New Year."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Sorrel Reach}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.5], [10, 37.9], [50, 39.2]]}
+turbines:
+  - count: 2
+    type: kaplan
+    rated_discharge: 2.5
+    rated_head: 3.2
+electrical: {drive_efficiency: 0.97, generator_efficiency: 0.93}
+operation:
+  planned_outage: {dates: [02-20 to 03-11, 08-03 to 08-09]}
+  standstill: {dates: [12-24 to 01-06]}
+  forced_outage_rate: 0.02
+""",
+    )
+    write_record(folder / "flow.csv", 38, "1999-10-01", "2001-09-30", 4.0, 0.8)
+    return path
+
+
 def added_rules(folder: Path) -> Path:
     """Rules that add up, and together ask for more than half of what comes in summer."""
     return _combined(folder, "sum")
@@ -723,6 +751,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         generator_load_curve,
         rules_of_permits,
         output_limited_by_head,
+        outages_by_dates,
         added_rules,
         first_of_rules,
         penstock_and_rack,

@@ -3,7 +3,7 @@
 from hydroyield.powerhouse.dispatch import HeadLines
 from hydroyield.powerhouse.dispatcher import Dispatcher
 from hydroyield.powerhouse.operation import Operation, operate
-from hydroyield.powerhouse.outages import Outages, Spread
+from hydroyield.powerhouse.outages import Dated, Outages, Spread
 from hydroyield.powerhouse.types import MachineType, machine_types
 from hydroyield.powerhouse.units import (
     EfficiencyCurve,
@@ -17,6 +17,7 @@ from hydroyield.powerhouse.units import (
 )
 
 __all__ = [
+    "Dated",
     "Dispatcher",
     "EfficiencyCurve",
     "Electrical",

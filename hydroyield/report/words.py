@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from typing import Any
 
 from hydroyield.jobs import SiteEstimate
-from hydroyield.powerhouse import UnitGroup
+from hydroyield.powerhouse import Dated, UnitGroup
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.years import MONTH_NAMES, span
@@ -243,10 +243,18 @@ def outages(estimate: SiteEstimate) -> str:
     found = estimate.scheme.outages
     parts = []
     if found.planned is not None:
-        parts.append(f"{found.planned.days:g} days of each unit in {months(found.planned.months)}")
+        if isinstance(found.planned, Dated):
+            turns = "one unit after another" if found.planned.turns > 1 else "the unit"
+            parts.append(f"{turns} out of service {_windows(found.planned)}")
+        else:
+            planned = found.planned
+            parts.append(f"{planned.days:g} days of each unit in {months(planned.months)}")
     if found.standstill is not None:
         standstill = found.standstill
-        parts.append(f"all stand {standstill.days:g} days in {months(standstill.months)}")
+        when = f"in {months(standstill.months)}"
+        if isinstance(standstill, Dated):
+            when = _windows(standstill)
+        parts.append(f"all stand {standstill.days:g} days {when}")
     if found.forced_rate:
         parts.append(f"each unit down {100 * found.forced_rate:g} % of the hours")
     if found.common_rate:
@@ -254,6 +262,14 @@ def outages(estimate: SiteEstimate) -> str:
     if found.closed:
         parts.append(f"closed in {months(found.closed)}")
     return "; ".join(parts) or "none stated"
+
+
+def _windows(dated: Dated) -> str:
+    """Windows of the year as people write them."""
+    return " and ".join(
+        f"from {day} {MONTH_NAMES[month - 1]} to {last_day} {MONTH_NAMES[last_month - 1]}"
+        for (month, day), (last_month, last_day) in dated.windows
+    )
 
 
 def _loss(loss: WaterwayLoss) -> str:

@@ -16,6 +16,7 @@ from pydantic import (
 
 from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, POWER, SHARE
 from hydroyield.site.blocks import Block
+from hydroyield.site.date_windows import Windows
 from hydroyield.site.faults import Finding, flow
 from hydroyield.site.fields import NUMBER_OR_TEXT, Choice, ListOf, Quantity, Whole
 from hydroyield.site.months import Months
@@ -369,33 +370,71 @@ class Electrical(Block):
                     )
 
 
-class PlannedOutage(Block):
-    """Maintenance: one unit after another is out, on days spread evenly over the months named."""
+class _Days(Block):
+    """Days of every year, stated by their number or by their dates."""
+
+    exactly_one_of: ClassVar[tuple[str, ...]] = ("days", "dates")
+    months_needed: ClassVar[bool] = False
+
+    @classmethod
+    def keys_fit_together(
+        cls, named: AbstractSet[str], written: Mapping[str, Any]
+    ) -> Iterable[Finding]:
+        """Months belong to a number of days."""
+        if "dates" in named and "months" in named:
+            yield ("months",), "'months' is read with days; the dates name their months"
+        if cls.months_needed and "days" in named and "months" not in named:
+            yield ("months",), "is missing; write months: [1, 2]"
+
+
+class PlannedOutage(_Days):
+    """Maintenance: one unit after another is out, on days by their number or by their dates."""
 
     example: ClassVar[dict[str, Any]] = {"days": 10, "months": [8]}
 
-    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="10")] = Field(
-        description="Days of each unit, every year [d].", examples=[10]
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="10")] | None = Field(
+        default=None,
+        description="Days of each unit, every year, spread evenly over the months [d].",
+        examples=[10],
     )
     months: Months | None = Field(
         default=None,
-        description="Calendar months in which they fall, such as 8 or aug-sep; those that cost "
+        description="Calendar months in which the days fall, such as 8 or aug-sep; those that cost "
         "the least energy if left out.",
         examples=[[8]],
     )
+    dates: Windows | None = Field(
+        default=None,
+        description="Windows of every year, month-day, both included, over the turn of the year "
+        "where need be: in them one unit after another is out, each for an equal part. They count "
+        "as days of their months, in which the river is taken as in the whole month.",
+        examples=[["08-10 to 08-19"]],
+    )
 
 
-class Standstill(Block):
-    """Days on which the whole plant stands, spread evenly over the months named."""
+class Standstill(_Days):
+    """Days on which the whole plant stands, by their number or by their dates."""
 
     example: ClassVar[dict[str, Any]] = {"days": 5, "months": [1, 2]}
+    months_needed: ClassVar[bool] = True
 
-    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="5")] = Field(
-        description="Days every year [d].", examples=[5]
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="5")] | None = Field(
+        default=None,
+        description="Days every year, spread evenly over the months [d].",
+        examples=[5],
     )
-    months: Months = Field(
-        description="Calendar months in which they fall, such as 1, jan or jan-feb.",
+    months: Months | None = Field(
+        default=None,
+        description="Calendar months in which the days fall, such as 1, jan or jan-feb; needed "
+        "with days, if left out.",
         examples=[[1, 2]],
+    )
+    dates: Windows | None = Field(
+        default=None,
+        description="Windows of every year, month-day, both included, over the turn of the year "
+        "where need be. They count as days of their months, in which the river is taken as in the "
+        "whole month.",
+        examples=[["12-20 to 01-10"]],
     )
 
 
