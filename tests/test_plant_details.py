@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import json
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -10,7 +12,11 @@ from scipy.interpolate import PchipInterpolator
 from test_plant_jobs import FALLING, RIVER, UNIT, WEIGHT, check, estimate, ledger
 
 import hydroyield.errors
+from hydroyield.jobs import SiteEstimate
+from hydroyield.quantities import rounded
 from hydroyield.report import words
+from hydroyield.report.page import page
+from hydroyield.report.result import result
 
 PCHIP = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])  # of UNIT
 
@@ -115,3 +121,61 @@ def test_the_page_says_when_units_take_turns(tmp_path: Path) -> None:
 def test_dates_that_cannot_be_read(tmp_path: Path, block: str, fault: str) -> None:
     with pytest.raises(hydroyield.errors.SiteFileError, match=fault):
         estimate(tmp_path, operation=f"{{{block}}}")
+
+
+# --- beside the headline --------------------------------------------------------------------------
+
+
+def as_result(found: SiteEstimate) -> dict[str, Any]:
+    return json.loads(json.dumps(result(found)))
+
+
+def test_an_ageing_plant_year_by_year(tmp_path: Path) -> None:
+    """Each year 2 % less than the year before: counted up for 31 years."""
+    new = estimate(tmp_path)
+    found = estimate(tmp_path, operation="{degradation: 2 %}")
+    energy = found.mean_annual_energy_mwh
+    assert energy == new.mean_annual_energy_mwh
+    years = [energy]
+    while len(years) < 31:
+        years.append(years[-1] * 0.98)
+    stated = as_result(found)["ageing"]
+    assert stated["degradation_share"] == 0.02
+    assert stated["aged_energy_mwh"] == pytest.approx(
+        {"10": years[10], "20": years[20], "30": years[30]}
+    )
+    assert stated["mean_aged_energy_mwh"] == pytest.approx(sum(years[:30]) / 30)
+    assert as_result(new)["ageing"] is None
+    assert words.ageing(new) == ""
+    said = words.ageing(found)
+    assert said.startswith("with 2 % less each year, ")
+    assert f"{rounded(years[10])}, {rounded(years[20])}, {rounded(years[30])} MWh after" in said
+    assert said in page(found, [])
+
+
+def test_metered_energy_is_what_the_generators_give(tmp_path: Path) -> None:
+    chain = "generator_efficiency: 90 %, transformer_efficiency: 98 %, own_use: 3 kW"
+    chain += ", standing_use: 1 kW"
+    blocks = {"operation": "{forced_outage_rate: 5 %}"}
+    at_grid = estimate(tmp_path, electrical=f"{{{chain}}}", **blocks)
+    found = estimate(tmp_path, electrical=f"{{{chain}, metered_at: generator}}", **blocks)
+    assert found.mean_annual_energy_mwh == at_grid.mean_annual_energy_mwh
+    metered = as_result(found)["metered_energy_mwh"]
+    given = sum(
+        float((state.weight * state.operation.output).sum())
+        for state in found.states
+        if state.operation is not None
+    )
+    assert metered == pytest.approx(given / 1e6, rel=1e-12)
+    assert metered > 1.02 * found.mean_annual_energy_mwh
+    assert as_result(at_grid)["metered_energy_mwh"] is None
+    assert words.metered(found) in page(found, [])
+    assert check(found, "metered_above_export_limit") is None
+
+
+def test_metered_energy_above_the_export_limit_is_named(tmp_path: Path) -> None:
+    found = estimate(tmp_path, electrical="{export_limit: 300 kW, metered_at: generator}")
+    named = check(found, "metered_above_export_limit")
+    assert named.value == pytest.approx(-ledger(found)["export_limit"])
+    at_grid = estimate(tmp_path, electrical="{export_limit: 300 kW}")
+    assert check(at_grid, "metered_above_export_limit") is None

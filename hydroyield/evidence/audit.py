@@ -10,6 +10,7 @@ from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.evidence.doubts import Doubt, Rerun, doubt_checks
 from hydroyield.evidence.machines import machine_checks
+from hydroyield.evidence.metering import metering_checks
 from hydroyield.evidence.other_days import day_checks
 from hydroyield.evidence.outages import outage_checks
 from hydroyield.evidence.waterway import waterway_checks
@@ -52,6 +53,7 @@ def audit(
         *_idle_rules(site),
         *waterway_checks(site.model, estimate),
         *outage_checks(site, estimate),
+        *metering_checks(site, estimate),
         *machine_checks(site, assembled, estimate),
         _energy(estimate),
         _capacity_factor(estimate),

@@ -133,6 +133,10 @@ def _answer(estimate: SiteEstimate) -> str:
     )
     if estimate.gain is not None:
         text += f"That is {words.gain(estimate)}. "
+    if words.metered(estimate):
+        text += f"Metered are {words.metered(estimate)}. "
+    if words.ageing(estimate):
+        text += f"This is the new plant; {words.ageing(estimate)}. "
     if not estimate.has_years:
         return text + (
             "The river is known by a duration table alone, so nothing can be said of single years "

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any
 
+from hydroyield.energy.beside import AGES, LIFE, after_years, at_terminals, mean_over_life
 from hydroyield.jobs import SiteEstimate
 from hydroyield.powerhouse import Dated, UnitGroup
 from hydroyield.quantities import W_PER_KW, rounded
@@ -166,6 +167,25 @@ def gain(estimate: SiteEstimate) -> str:
         f"{energy(abs(found.gain_mwh))} a year {more} than the old plant "
         f"({energy(found.baseline_mwh)}, {percent(share)}){years}"
     )
+
+
+def ageing(estimate: SiteEstimate) -> str:
+    """The energy of the plant as it ages, in one phrase; "" where nothing is stated."""
+    share, new = estimate.site.model.operation.degradation, estimate.mean_annual_energy_mwh
+    if share is None:
+        return ""
+    aged = ", ".join(f"{rounded(after_years(new, share, age))}" for age in AGES)
+    return (
+        f"with {100 * share:g} % less each year, {aged} MWh after {AGES[0]}, {AGES[1]} and "
+        f"{AGES[2]} years, {energy(mean_over_life(new, share))} on average over {LIFE}"
+    )
+
+
+def metered(estimate: SiteEstimate) -> str:
+    """The energy at the generator terminals, in one phrase; "" where the grid is the place."""
+    if estimate.site.model.electrical.metered_at == "grid":
+        return ""
+    return f"{energy(at_terminals(estimate.ledger_mwh))} at the generator terminals"
 
 
 def inflow_below(model: SiteFile) -> str:

@@ -34,6 +34,7 @@ TurbineType = Literal[
     "screw",
     "other",
 ]
+MeteredAt = Literal["grid", "generator"]
 MONTHS_PER_YEAR = 12
 MOST_UNITS = 50  # of one group; more is a slip of the pen in a small plant
 
@@ -355,6 +356,14 @@ class Electrical(Block):
         examples=["220 kW"],
     )
 
+    metered_at: Annotated[MeteredAt, Choice(get_args(MeteredAt))] = Field(
+        default="grid",
+        description="Where the energy is metered: grid or generator. The result is net at the grid "
+        "either way; with generator the energy at the generator terminals stands beside it, before "
+        "transformer, own use and export limit; grid if left out.",
+        examples=["generator"],
+    )
+
     @classmethod
     def keys_fit_together(
         cls, named: AbstractSet[str], written: Mapping[str, Any]
@@ -474,6 +483,16 @@ class Operation(Block):
         description="Days on which the whole plant stands, such as for ice or flushing; none if "
         "left out.",
         examples=[Standstill.example],
+    )
+    degradation: Annotated[float, Quantity(SHARE, at_least=0, below=1, example="0.3 %")] | None = (
+        Field(
+            default=None,
+            description="Share of the energy that is lost from each year to the next as the plant "
+            "ages [share or %]. The result stays that of the new plant; the energy after 10, 20 "
+            "and 30 years and the mean over 30 stand beside it. Nothing is said of ageing if left "
+            "out.",
+            examples=["0.3 %"],
+        )
     )
     closed: Months | None = Field(
         default=None,
