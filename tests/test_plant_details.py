@@ -8,10 +8,14 @@ from typing import Any
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 from scipy.interpolate import PchipInterpolator
 from test_plant_jobs import FALLING, RIVER, UNIT, WEIGHT, check, estimate, ledger
 
+import hydroyield
 import hydroyield.errors
+from hydroyield.energy.starting import waiting_days
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import rounded
 from hydroyield.report import words
@@ -179,3 +183,109 @@ def test_metered_energy_above_the_export_limit_is_named(tmp_path: Path) -> None:
     assert named.value == pytest.approx(-ledger(found)["export_limit"])
     at_grid = estimate(tmp_path, electrical="{export_limit: 300 kW}")
     assert check(at_grid, "metered_above_export_limit") is None
+
+
+# --- starting discharge ---------------------------------------------------------------------------
+
+SLOW = f"\n  {UNIT}, starting_discharge: 50 %}}"  # starts at 1.5 m3/s, runs on down to 0.6
+LOW = np.round(RIVER / 2, 3)
+
+
+@given(
+    st.lists(st.tuples(st.booleans(), st.booleans()), min_size=1, max_size=40),
+)
+@settings(max_examples=80, deadline=None)
+def test_waiting_days_against_a_walk_through_them(days: list[tuple[bool, bool]]) -> None:
+    running, expected = False, []
+    for runs, enough in days:
+        expected.append(runs and not (running or enough))
+        running = runs and (running or enough)
+    runs, enough = (np.array(column) for column in zip(*days, strict=True))
+    assert waiting_days(runs, enough).tolist() == expected
+
+
+def walked(river: np.ndarray, power: dict[float, float], closed: tuple[int, ...] = ()) -> float:
+    """Energy of a mean year [MWh], day after day; `power` is that of a running plant [W]."""
+    running, total = False, 0.0
+    for number, discharge in enumerate(river.tolist()):
+        month = (np.datetime64("2000-10-01") + number).astype("datetime64[M]").astype(int) % 12 + 1
+        known = not np.isnan(discharge) and month not in closed
+        running = known and discharge >= (0.6 if running else 1.5)
+        total += 24 * power[discharge] if running else 0.0
+    return total / 4e6
+
+
+def test_a_plant_that_starts_late_day_by_day(tmp_path: Path) -> None:
+    free = estimate(tmp_path, LOW)
+    power = dict(zip(free.cells.discharge.tolist(), free.net_power.tolist(), strict=True))
+    found = estimate(tmp_path, LOW, turbines=SLOW)
+    assert found.mean_annual_energy_mwh == pytest.approx(walked(LOW, power), rel=1e-9)
+    assert found.mean_annual_energy_mwh < 0.99 * free.mean_annual_energy_mwh
+    assert sum(found.monthly_energy_mwh) == pytest.approx(found.mean_annual_energy_mwh)
+    assert ledger(found)["below_minimum_or_unused"] < ledger(free)["below_minimum_or_unused"]
+    named = check(found, "starting_discharge")
+    running, waited = False, 0
+    for discharge in LOW:
+        waited += not running and 0.6 <= discharge < 1.5
+        running = discharge >= (0.6 if running else 1.5)
+    assert (named.outcome, named.value) == ("pass", pytest.approx(waited / 4))
+    shut = estimate(tmp_path, LOW, turbines=SLOW, operation="{closed: [2, 7]}")
+    expected = walked(LOW, power, (2, 7))
+    assert shut.mean_annual_energy_mwh == pytest.approx(expected, rel=1e-9)
+
+
+def test_a_day_without_a_value_leaves_the_plant_standing(tmp_path: Path) -> None:
+    """0.9 m3/s from day to day after a single day of 2: it runs on until a day is missing."""
+    steady = np.full(RIVER.size, 0.9)
+    steady[0] = 2.0
+    whole = estimate(tmp_path, steady, turbines=SLOW)
+    assert whole.cells.waiting is not None
+    assert not whole.cells.waiting.any()
+    steady[700] = np.nan
+    found = estimate(tmp_path, steady, turbines=SLOW)
+    assert found.scheme.waiting is not None
+    assert np.flatnonzero(found.scheme.waiting).tolist() == list(range(701, RIVER.size))
+    yearly = found.yearly_energy_mwh
+    assert yearly["2001"] == pytest.approx(whole.yearly_energy_mwh["2001"])
+    assert yearly["2003"] == yearly["2004"] == 0.0
+
+
+def test_starting_at_the_minimum_changes_nothing(tmp_path: Path) -> None:
+    same = estimate(tmp_path, turbines=f"\n  {UNIT}, starting_discharge: 20 %}}")
+    assert same.mean_annual_energy_mwh == estimate(tmp_path).mean_annual_energy_mwh
+    assert same.cells.waiting is None
+    assert check(same, "starting_discharge") is None
+
+
+def test_a_branch_does_not_change_the_share_at_which_a_unit_starts(tmp_path: Path) -> None:
+    """Behind 2.5 m lost at 3 m3/s: q / q_full(net head) >= 0.5 at the discharge of the day."""
+    branch = ", waterway: [{loss_coefficient: 0.2777777777777778}]}"
+    found = estimate(tmp_path, LOW, turbines=SLOW.removesuffix("}") + branch)
+    starts, running = [], False
+    for discharge in LOW:
+        net = 20 - 2.5 / 9 * min(discharge, 2.8) ** 2
+        share = discharge / (3 * np.sqrt(net / 20))
+        starts.append(not running and 0.2 <= share < 0.5)
+        running = share >= (0.2 if running else 0.5)
+    assert found.scheme.waiting is not None
+    assert found.scheme.waiting.tolist() == starts
+
+
+def test_without_days_units_start_at_their_minimum(tmp_path: Path) -> None:
+    text = (
+        "format: 1\nsite: {name: T}\ndischarge: {duration_table: [[5, 9], [50, 3], [95, 0.4]]}\n"
+        "head: {headwater: {level: 30}, tailwater: {level: 10}}\n"
+    )
+    energy = {}
+    for name, unit in (("free", f"\n  {UNIT}}}"), ("slow", SLOW)):
+        path = tmp_path / f"{name}.yaml"
+        path.write_text(f"{text}turbines: {unit}\n")
+        energy[name] = hydroyield.estimate(hydroyield.read_site(path))
+    assert energy["slow"].mean_annual_energy_mwh == energy["free"].mean_annual_energy_mwh
+    assert check(energy["slow"], "starting_discharge").outcome == "warn"
+
+
+def test_a_start_below_the_minimum_is_a_fault(tmp_path: Path) -> None:
+    fault = r"turbines\[0\].starting_discharge: 10 % is less than the minimum discharge of 20 %"
+    with pytest.raises(hydroyield.errors.SiteFileError, match=fault):
+        estimate(tmp_path, turbines=f"\n  {UNIT}, starting_discharge: 10 %}}")

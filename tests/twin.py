@@ -105,6 +105,7 @@ class Unit:
     axis: float | None = None  # m
     generator: Callable[[Any], Any] | None = field(default=None, repr=False, compare=False)
     limit: tuple[tuple[float, float], ...] = ()  # net head [m] and the most it gives [W]
+    start: float = 0.0  # share of full discharge at which it starts
 
     def most(self, head: Any) -> Any:
         """The most that the unit may give [W] at a net head [m]."""
@@ -338,6 +339,7 @@ class Plant:
     units: list[Unit] = field(default_factory=list)
     remembered: dict[Any, Any] = field(default_factory=dict)
     fineness: int = 1
+    waiting: set[datetime.date] = field(default_factory=set)
 
     def __post_init__(self) -> None:
         self.falling = sorted(self.days.values(), reverse=True)
@@ -730,6 +732,7 @@ def make_units(plant: Plant) -> list[Unit]:
             group.get("axis_level"),
             load_curve,
             tuple((head, 1000 * power) for head, power in group.get("output_limit") or []),
+            group.get("starting_discharge", minimum),
         )
         units += [unit] * group.get("count", 1)
     return units
@@ -783,19 +786,59 @@ def stopped_by_river(plant: Plant, discharge: float) -> bool:
     return limit is not None and discharge > limit
 
 
+def waiting_days(plant: Plant) -> set[datetime.date]:
+    """Days on which the plant stands as it stood the day before and lacks the water to start."""
+    if all(unit.start <= unit.minimum for unit in plant.units):
+        return set()
+    day, last, running, found = min(plant.days), max(plant.days), False, set()
+    while day <= last:
+        could = starts = False
+        if day in plant.days:
+            could, starts = could_run_or_start(plant, day)
+        if could and not (running or starts):
+            found.add(day)
+        running = could and (running or starts)
+        day += datetime.timedelta(days=1)
+    return found
+
+
+def could_run_or_start(plant: Plant, day: datetime.date) -> tuple[bool, bool]:
+    """Whether the plant could run on this day if it ran before, and whether it could start."""
+    discharge = plant.days[day]
+    water = share_water(plant, day.month, discharge)
+    key = ("start", discharge, water)
+    if key not in plant.remembered:
+        could = starts = False
+        if not stopped_by_river(plant, discharge):
+            heads = heads_of_day(plant, discharge, water)
+            everyone = tuple(range(len(plant.units)))
+            could = state_of(plant, discharge, water, heads, everyone).total > 0
+            for unit in plant.units:
+                grid = np.linspace(0, water.offered, 20001)[1:]
+                net = heads(unit.axis, grid)[1]
+                opened = unit.start * full_discharge(unit, net)
+                starts = starts or bool(((net > 0) & (grid >= opened * (1 - EQUAL))).any())
+        plant.remembered[key] = could, starts
+    return plant.remembered[key]
+
+
 def rows_of_day(
-    plant: Plant, discharge: float, water: Water, available: tuple[int, ...] | None
+    plant: Plant,
+    discharge: float,
+    water: Water,
+    available: tuple[int, ...] | None,
+    waiting: bool = False,
 ) -> dict[str, float]:
     """Power [W] of each ledger step on a day; `available` lists the units that are not out."""
     everyone = tuple(range(len(plant.units)))
     available = everyone if available is None else available
-    key = (discharge, water, available)
+    key = (discharge, water, available, waiting)
     if key in plant.remembered:
         return plant.remembered[key]
     heads = heads_of_day(plant, discharge, water)
     stopped = stopped_by_river(plant, discharge)
     everything = state = STANDING
-    if not stopped:
+    if not stopped and not waiting:
         everything = state_of(plant, discharge, water, heads, everyone)
         state = state_of(plant, discharge, water, heads, available)
     rows = dict.fromkeys(STEPS, 0.0)
@@ -950,6 +993,7 @@ def load(path: Path | str, record: Path | str | None = None, fineness: int = 1) 
     place = site.get("site") or {}
     plant = Plant(site, days, water_density(place), local_gravity(place), fineness=fineness)
     plant.units = make_units(plant)
+    plant.waiting = waiting_days(plant)
     return plant
 
 
@@ -978,7 +1022,8 @@ def month_energy(plant: Plant, year: int, month: int) -> dict[str, float]:
     for day in days:
         water = share_water(plant, month, plant.days[day])
         for probability, available in availability(plant, day):
-            rows = rows_of_day(plant, plant.days[day], water, available)
+            waiting = day in plant.waiting
+            rows = rows_of_day(plant, plant.days[day], water, available, waiting)
             for step in STEPS:
                 sums[step] += probability * rows[step]
     return {step: sums[step] / len(days) * hours / 1e6 for step in STEPS}

@@ -630,6 +630,45 @@ electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
     return path
 
 
+def slow_to_start(folder: Path) -> Path:
+    """Two unlike units that start at more water than they need, a gap, floods that stop them."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Burdock Race}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.4}
+  - {rule: constant, discharge: 0.7, months: [5, 6, 7, 8]}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.5], [10, 37.9], [50, 39.2]]}
+waterway:
+  - {loss_coefficient: 0.004}
+turbines:
+  - count: 1
+    type: francis
+    rated_discharge: 4.0
+    rated_head: 3.2
+    minimum_discharge: 0.35
+    starting_discharge: 0.6
+  - count: 1
+    type: francis
+    rated_discharge: 3.0
+    rated_head: 3.2
+    minimum_discharge: 0.4
+    starting_discharge: 0.7
+electrical: {drive_efficiency: 0.97, generator_efficiency: 0.93, own_use: 1.0}
+operation: {shutdown_above: 18, forced_outage_rate: 0.02}
+""",
+    )
+    spells = (("2000-06-03", 3), ("2001-11-11", 1))
+    write_record(folder / "flow.csv", 39, "1999-10-01", "2002-03-20", 3.2, 0.9, blank_spells=spells)
+    return path
+
+
 def outages_by_dates(folder: Path) -> Path:
     """Two units that take turns in a window of late winter, and a standstill over New Year."""
     path = write_site(
@@ -752,6 +791,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         rules_of_permits,
         output_limited_by_head,
         outages_by_dates,
+        slow_to_start,
         added_rules,
         first_of_rules,
         penstock_and_rack,

@@ -311,7 +311,9 @@ def estimate_energy(scheme: Scheme) -> Estimate:
     used, left_out = usable_years(months, scheme.minimum_month_coverage, scheme.year_start_month)
     if not used.any():
         raise NoUsableYearError(left_out)
-    cells = condense(scheme.discharge, calendar, months, used, scheme.rules.season_of_month)
+    cells = condense(
+        scheme.discharge, calendar, months, used, scheme.rules.season_of_month, scheme.waiting
+    )
     return _run(scheme, cells, left_out)
 
 
@@ -332,7 +334,7 @@ def _state(scheme: Scheme, cells: Cells, counts: tuple[int, ...], chance: Floats
         standing = scheme.net_power(np.zeros(cells.discharge.size))
         return PlantState(counts, chance, weight, None, standing)
     part = scheme.with_units(counts)
-    run = part.operate(cells.discharge, cells.season)
+    run = part.operate(cells.discharge, cells.season, cells.waiting)
     return PlantState(counts, chance, weight, run, part.net_power(run.output))
 
 

@@ -10,7 +10,7 @@ from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.powerhouse import HillChart, UnitGroup, machine_types
 from hydroyield.powerhouse.types import SMALL_MACHINE
-from hydroyield.quantities import W_PER_KW
+from hydroyield.quantities import HOURS_PER_DAY, W_PER_KW
 from hydroyield.site.assembly import Assembled
 from hydroyield.site.reading import SiteDescription
 
@@ -35,6 +35,8 @@ def machine_checks(
             yield _head_of_chart(label, group.curve, estimate)
         else:
             yield _head_band(label, group, estimate)
+    if estimate.scheme.waits_to_start:
+        yield _waiting(estimate)
     yield _rated_state(assembled)
 
 
@@ -149,6 +151,22 @@ def _head_of_chart(label: str, chart: HillChart, estimate: Estimate) -> Check:
         LARGEST_SHARE_OUTSIDE,
         f"{words}.",
         f"{words}, where the nearest row is held. Ask the maker for more heads.",
+    )
+
+
+def _waiting(estimate: Estimate) -> Check:
+    """What the starting discharge costs in days, or that it cannot be known."""
+    waiting = estimate.cells.waiting
+    days = None if waiting is None else estimate.cells.weight[waiting].sum() / HOURS_PER_DAY
+    return warn_unless(
+        "starting_discharge",
+        days is not None,
+        None if days is None else float(days),
+        None,
+        f"The plant stands on {days or 0:.3g} days a year on which it could run on but waits for "
+        "its starting discharge.",
+        "starting_discharge is left aside: a duration table does not say which day follows which, "
+        "so that units start at their minimum. Use a record to see what it costs.",
     )
 
 

@@ -15,6 +15,7 @@ from hydroyield.powerhouse.units import Plant, UnitGroup
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Bools = NDArray[np.bool_]
 
 
 class Dispatcher:
@@ -117,6 +118,21 @@ class Dispatcher:
                 * np.maximum(full, 1e-300)[runs]
             )
         return total
+
+    def can_start(self, state: HeadState, turbined: Floats, reach: Floats) -> Bools:
+        """(n,) whether a unit that can run at `turbined` has water enough to start.
+
+        turbined : (n,) at which the plant would run [m3/s]
+        reach : (n,) the most that it could take [m3/s]
+        """
+        mask = self.admissible(state, turbined, self.heads(state, turbined))
+        heads = self.heads(state, reach)
+        found = np.zeros(turbined.shape, dtype=np.bool_)
+        for number, (group, line) in enumerate(self.groups_on_lines):
+            share = max(group.starting_share, group.minimum_share)
+            enough = reach >= share * group.full_discharge(heads[line]) * (1 - 1e-9)
+            found |= enough & (mask >> number & 1 == 1)
+        return found
 
     def capacity(self, state: HeadState, turbined: Floats, running: Ints) -> Floats:
         """(n,) the most that the running units may give together at the heads of `turbined` [W].

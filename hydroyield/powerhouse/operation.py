@@ -64,12 +64,19 @@ class Operation:
     at_capacity: Bools
 
 
-def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: Bools) -> Operation:
+def operate(
+    dispatcher: Dispatcher,
+    state: HeadState,
+    offered: Floats,
+    stopped: Bools,
+    waiting: Bools | None = None,
+) -> Operation:
     """Find how the plant runs.
 
     state : levels at n states of the river, in rising order of discharge where possible
     offered : (n,) water offered to the turbines [m3/s]
     stopped : (n,) the river discharge stops the plant
+    waiting : (n,) the plant stands and waits for more water to start; None where it never does
     """
     fully_open = _full_opening(dispatcher, state, offered)
     reach = np.minimum(offered, fully_open)
@@ -90,6 +97,7 @@ def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: 
     if dispatcher.on_two_lines:
         output = dispatcher.output_of_best_sharing(state, turbined)
     runs = (output > 0) & ~stopped
+    runs = runs if waiting is None else runs & ~waiting
     turbined, output = np.where(runs, turbined, 0.0), np.where(runs, output, 0.0)
     at_capacity &= runs
     idle = np.flatnonzero(runs & ~at_capacity & (turbined < reach * (1 - 1e-6)))

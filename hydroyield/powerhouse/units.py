@@ -183,6 +183,8 @@ class UnitGroup:
     axis_level : where the head of an impulse machine ends [m]; None for the tailwater
     branch : k of h = k q^2 on the way of one unit alone [m per (m3/s)^2]
     output_limit : against the net head; None where the capacity alone limits
+    starting_share : discharge at which a unit that stands starts, as a share of full discharge;
+        where it is less than the minimum, at the minimum
     """
 
     count: int
@@ -195,6 +197,7 @@ class UnitGroup:
     axis_level: float | None = None
     branch: float = 0.0
     output_limit: OutputLimit | None = None
+    starting_share: float = 0.0
 
     def before_branch(self) -> UnitGroup:
         """The same units as the shared waterway sees them, their branches taken into the curve."""
@@ -202,10 +205,13 @@ class UnitGroup:
             return self
         lost = self.branch * self.rated_discharge**2
         share = lost / (self.rated_head + lost)
+        openings = np.array([self.minimum_share, self.starting_share])
+        minimum, starting = relative_opening(openings, share).tolist()
         return replace(
             self,
             rated_head=self.rated_head + lost,
-            minimum_share=float(relative_opening(np.array([self.minimum_share]), share)[0]),
+            minimum_share=minimum,
+            starting_share=starting,
             curve=BranchCurve(cast("EfficiencyCurve | JetCurve", self.curve), share),
             branch=0.0,
         )

@@ -239,7 +239,7 @@ def _turbines(estimate: SiteEstimate) -> Rows:
                 + words.output_limit(group),
                 mark("rated_discharge", words.discharge(group.rated_discharge)),
                 mark("rated_head", words.head(group.rated_head)),
-                words.percent(group.minimum_share),
+                words.percent(group.minimum_share) + words.starting(group),
                 "typical of the type" if typical else _given(group),
             )
         )

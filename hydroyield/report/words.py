@@ -247,6 +247,13 @@ def waterway(model: SiteFile) -> str:
     return "; ".join(losses) or "none stated"
 
 
+def starting(group: UnitGroup) -> str:
+    """The starting discharge, behind the minimum; "" where it is no more than that."""
+    if group.starting_share <= group.minimum_share:
+        return ""
+    return f", starts at {percent(group.starting_share)}"
+
+
 def output_limit(group: UnitGroup) -> str:
     """The limit by head, behind the capacity; "" without one."""
     limit = group.output_limit

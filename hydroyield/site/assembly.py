@@ -47,7 +47,7 @@ from hydroyield.river.reserve import ALL_YEAR, InflowRule
 from hydroyield.site.head_models import Head, Headwater, RiverLevel
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.outage_assembly import outages_of
-from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
+from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults, starting_fault
 from hydroyield.site.plant_models import EfficiencyTable, TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
 from hydroyield.site.river_assembly import RiverAtSite, inflow_below_intake
@@ -86,6 +86,7 @@ def read_site(path: str | Path) -> SiteDescription:
             site, number, group.unit_capacity, group.rated_discharge, group.rated_head,
             specific_weight,
         )  # fmt: skip
+        faults += starting_fault(site, number, group.starting_discharge, minimum_share(group))
     if faults:
         raise SiteFileError(sorted(faults, key=lambda fault: fault.line or 0))
     return site
@@ -343,6 +344,7 @@ def _plant(
             group.axis_level,
             waterway_of(group.waterway, model.site),
             _output_limit(group),
+            group.starting_discharge or 0.0,
         )
         for group in model.turbines
     ]

@@ -181,6 +181,15 @@ class TurbineGroup(Block):
         "moment [share or %]; by type if left out.",
         examples=["20 %"],
     )
+    starting_discharge: Annotated[float, Quantity(SHARE, above=0, at_most=1)] | None = Field(
+        default=None,
+        description="Discharge at which a unit starts, of full discharge at the head of the moment "
+        "[share or %], at least the minimum. A plant that stands starts only on a day on which the "
+        "water reaches the least of these, and runs on down to the minimum; a day without a value "
+        "or a shutdown leaves it standing. With units out of service it waits on the same days. "
+        "Units start at their minimum if left out.",
+        examples=["30 %"],
+    )
     efficiency: (
         Annotated[EfficiencyCurve | EfficiencyTable, WrapValidator(_curve_or_table)] | None
     ) = Field(
