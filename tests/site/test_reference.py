@@ -154,6 +154,13 @@ def test_types_of_turbine_stand_with_what_is_filled_in() -> None:
     assert row in page
 
 
+def test_it_says_how_leakage_gates_and_branches_are_written() -> None:
+    page = reference_text()
+    assert "Leakage past gates, seals and canal walls is written as an abstraction" in page
+    assert "Gates that hold the level are a table with equal levels" in page
+    assert "before the branch of one unit" in page
+
+
 def test_every_link_leads_to_a_heading() -> None:
     page = reference_text()
     anchors = {
