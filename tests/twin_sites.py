@@ -630,6 +630,111 @@ electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
     return path
 
 
+def branches_of_units(folder: Path) -> Path:
+    """Unlike units, each behind a pipe and an outlet of its own, beside a shared loss."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Comfrey Leat, water_temperature: 8}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.2}
+head:
+  headwater: {level: 140.0}
+  tailwater: {table: [[0, 118.0], [4, 118.4], [20, 119.5]]}
+waterway:
+  - {loss_coefficient: 0.08}
+turbines:
+  - count: 1
+    type: francis
+    rated_discharge: 2.2
+    minimum_discharge: 0.35
+    starting_discharge: 0.45
+    waterway:
+      - {pipe: {length: 60, diameter: 0.9, roughness: 0.0003, minor_losses: 0.8}}
+      - {exit: {area: 1.1}}
+  - count: 1
+    type: kaplan
+    rated_discharge: 1.1
+    rated_head: 19.5
+    unit_capacity: 165
+    waterway:
+      - {loss_coefficient: 1.6}
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 40, "1999-10-01", "2001-09-30", 2.4, 0.9)
+    return path
+
+
+def jets_in_turn(folder: Path) -> Path:
+    """Two Pelton units of three jets that close one after another."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Saxifrage Fall}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.05}
+head:
+  headwater: {level: 600.0}
+  tailwater: {table: [[0, 478.0], [3, 479.2], [8, 480.4]]}
+waterway:
+  - {loss_coefficient: 14.0}
+turbines:
+  - count: 2
+    type: pelton
+    jets: 3
+    rated_discharge: 0.35
+    rated_head: 112.0
+    axis_level: 480.0
+    efficiency: [[0.1, 0.55], [0.2, 0.74], [0.4, 0.87], [0.7, 0.9], [1.0, 0.86]]
+electrical: {generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 41, "1999-10-01", "2001-09-30", 0.45, 0.9)
+    return path
+
+
+def chart_over_heads(folder: Path) -> Path:
+    """A maker's chart of a Kaplan unit whose head falls in floods, beside a small Francis unit."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Tansy Weir}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.5}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.2], [10, 38.0], [50, 39.6]]}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 5.0
+    rated_head: 3.2
+    unit_capacity: 122
+    efficiency:
+      heads: [1.8, 2.6, 3.4]
+      discharges: [0.8, 2.0, 3.5, 5.0]
+      values: [[0.58, 0.74, 0.80, 0.74], [0.64, 0.82, 0.88, 0.84], [0.66, 0.86, 0.91, 0.88]]
+  - count: 1
+    type: francis
+    rated_discharge: 2.0
+    rated_head: 3.2
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 42, "1999-10-01", "2001-09-30", 6.0, 0.9)
+    return path
+
+
 def slow_to_start(folder: Path) -> Path:
     """Two unlike units that start at more water than they need, a gap, floods that stop them."""
     path = write_site(
@@ -792,6 +897,9 @@ SITES: dict[str, Callable[[Path], Path]] = {
         output_limited_by_head,
         outages_by_dates,
         slow_to_start,
+        branches_of_units,
+        jets_in_turn,
+        chart_over_heads,
         added_rules,
         first_of_rules,
         penstock_and_rack,
