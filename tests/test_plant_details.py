@@ -21,6 +21,7 @@ from hydroyield.quantities import rounded
 from hydroyield.report import words
 from hydroyield.report.page import page
 from hydroyield.report.result import result
+from hydroyield.site.notes import filled_in
 
 PCHIP = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])  # of UNIT
 
@@ -289,3 +290,26 @@ def test_a_start_below_the_minimum_is_a_fault(tmp_path: Path) -> None:
     fault = r"turbines\[0\].starting_discharge: 10 % is less than the minimum discharge of 20 %"
     with pytest.raises(hydroyield.errors.SiteFileError, match=fault):
         estimate(tmp_path, turbines=f"\n  {UNIT}, starting_discharge: 10 %}}")
+
+
+# --- what the page says ---------------------------------------------------------------------------
+
+
+def test_the_page_shows_limits_starts_and_the_way_rules_are_combined(tmp_path: Path) -> None:
+    rules = "[{rule: constant, discharge: 0.2}, {rule: mean_share, share: 10 %}]"
+    found = estimate(
+        tmp_path,
+        turbines=f"\n  {UNIT}, {LIMIT}, starting_discharge: 40 %}}",
+        environmental_flow=rules,
+        environmental_flow_combination="sum",
+    )
+    shown = page(found, [])
+    assert "limited by head: 150 kW at 12.0 m to 420 kW at 19.0 m" in shown
+    assert "20 %, starts at 40 %" in shown
+    assert "Environmental flow, the sum of" in shown
+    largest = estimate(tmp_path, environmental_flow=rules)
+    assert "Environmental flow, the largest of" in page(largest, [])
+    filled = {note.key for note in filled_in(largest.site)} - {
+        note.key for note in filled_in(found.site)
+    }
+    assert filled == {"environmental_flow_combination"}

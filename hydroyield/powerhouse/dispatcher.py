@@ -140,6 +140,9 @@ class Dispatcher:
         turbined : (n,) for the heads [m3/s]
         running : (n, groups) 1 for the groups that run
         """
+        if not self.limited_by_head:
+            of_groups = [group.count * group.unit_capacity for group in self.plant.groups]
+            return np.asarray((running * np.array(of_groups)).sum(axis=1))
         heads = self.heads(state, turbined)
         total = np.zeros(turbined.size)
         for number, (group, line) in enumerate(self.groups_on_lines):
