@@ -21,7 +21,9 @@ from hydroyield.quantities import rounded
 from hydroyield.report import words
 from hydroyield.report.page import page
 from hydroyield.report.result import result
+from hydroyield.report.understood import understood
 from hydroyield.site.notes import filled_in
+from hydroyield.site.plant_models import Standstill
 
 PCHIP = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])  # of UNIT
 
@@ -107,6 +109,13 @@ def test_the_page_says_when_units_take_turns(tmp_path: Path) -> None:
         "one unit after another out of service from 10 August to 19 August and from 1 March to "
         "2 March"
     )
+
+
+def test_dates_are_shown_as_they_are_written(tmp_path: Path) -> None:
+    site = estimate(tmp_path, operation="{standstill: {dates: [8-1 to 8-19, 12-24]}}").site
+    shown = understood(site)["stated"]["operation"]["standstill"]
+    assert shown == {"dates": ["08-01 to 08-19", "12-24 to 12-24"]}
+    assert Standstill.model_validate(shown) == site.model.operation.standstill
 
 
 @pytest.mark.parametrize(

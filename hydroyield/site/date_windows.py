@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from typing import Annotated, Any
 
-from pydantic import BeforeValidator, WithJsonSchema
+from pydantic import BeforeValidator, PlainSerializer, WithJsonSchema
 
 from hydroyield.site.faults import Finding, refuse, shown
 from hydroyield.site.fields import kind_of
@@ -68,9 +68,18 @@ def _days_of(window: Window) -> list[Day]:
     return year[first : last + 1] if last >= first else year[first:] + year[: last + 1]
 
 
+def _written(windows: tuple[Window, ...]) -> list[str]:
+    """Windows as a site file states them."""
+    return [
+        f"{month:02d}-{day:02d} to {last_month:02d}-{last_day:02d}"
+        for (month, day), (last_month, last_day) in windows
+    ]
+
+
 Windows = Annotated[
     tuple[Window, ...],
     BeforeValidator(read_windows),
+    PlainSerializer(_written, return_type=list[str], when_used="json"),
     WithJsonSchema(
         {
             "anyOf": [
