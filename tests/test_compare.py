@@ -146,6 +146,42 @@ def test_a_written_option_keeps_the_words_of_the_user(tmp_path: Path) -> None:
     assert "an offer of last year" not in text  # it spoke of other turbines
 
 
+def test_limits_by_head_and_starts_move_with_the_size_of_the_unit(tmp_path: Path) -> None:
+    """A limit drawn for 4 m3/s, on units of 2 m3/s: half of each power, at the same heads."""
+    keys = (
+        "starting_discharge: 40 %\n    output_limit: [[3.0 m, 60 kW], [4 m, 100 kW]]\n    "
+        "minimum_discharge"
+    )
+    path = write_site(tmp_path, river(2), "unit_counts: [2]\ndesign_discharges: [4]", minimum="0.2")
+    path.write_text(path.read_text().replace("minimum_discharge", keys))
+    site = read_site(path)
+    (option,) = jobs.compare(site).options
+    written = tmp_path / "written.yaml"
+    written.write_bytes(jobs.write_option(site, 1)["site.yaml"])
+    text = written.read_text()
+    assert "output_limit: [[3.0, 30.0], [4.0, 50.0]]" in text
+    assert "starting_discharge: 0.4" in text
+    alone = hydroyield.estimate(read_site(written))
+    assert alone.mean_annual_energy_mwh == pytest.approx(option.mean_annual_energy, rel=1e-9)
+    (group,) = alone.scheme.plant.groups
+    assert group.most_output(np.array([3.0, 4.0])) == pytest.approx([30e3, 50e3])
+
+
+def test_a_limit_of_unknown_size_and_a_start_below_the_minimum_are_refused(tmp_path: Path) -> None:
+    options = (
+        "unit_counts: [1]\ntypes: [{type: kaplan, minimum_discharge: 30 %}]\nexceedances: [30]"
+    )
+    path = write_site(tmp_path, river(1), options, minimum="0.1")
+    start = path.read_text().replace("minimum_discharge: 0.1", "starting_discharge: 0.2")
+    path.write_text(start)
+    with pytest.raises(SiteFileError, match="start at less than its minimum of 30 %"):
+        jobs.compare(read_site(path))
+    limit = start.replace("starting_discharge: 0.2", "output_limit: [[3 m, 60 kW], [4 m, 90 kW]]")
+    path.write_text(limit.replace("rated_discharge: 4", "unit_capacity: 90 kW"))
+    with pytest.raises(SiteFileError, match="write rated_discharge of the unit"):
+        jobs.compare(read_site(path))
+
+
 def test_a_site_file_in_braces_can_be_written_too(tmp_path: Path) -> None:
     (tmp_path / "daily.csv").write_text("date,discharge\n2001-10-01,3\n", "utf-8")
     path = tmp_path / "site.yaml"

@@ -13,6 +13,7 @@ from typing import Any
 
 import pytest
 import twin_sites
+import yaml
 from typer.testing import CliRunner
 
 from hydroyield.cli import app
@@ -139,7 +140,10 @@ def numeric_names(content: Any, name: str = "") -> Iterator[str]:
 def names_in_files(tmp_path_factory: pytest.TempPathFactory) -> set[str]:
     """Numeric keys of result.json and columns of the tables, of a site with rules by month."""
     site = twin_sites.several_flow_rules(tmp_path_factory.mktemp("site"))
-    site.write_text(site.read_text() + OPTIONS)
+    stated = yaml.safe_load(site.read_text("utf-8"))
+    stated.setdefault("operation", {})["degradation"] = 0.003
+    stated.setdefault("electrical", {})["metered_at"] = "generator"
+    site.write_text(yaml.safe_dump(stated) + OPTIONS, "utf-8")
     folder = site.parent / "out"
     names: set[str] = set()
     for command in ("estimate", "compare"):

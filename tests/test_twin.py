@@ -187,6 +187,77 @@ def test_weir_head_sees_what_the_turbines_leave(tmp_path: Path) -> None:
     )
 
 
+def test_the_first_rule_or_the_sum_of_rules(tmp_path: Path) -> None:
+    """By hand: 40 % of what exceeds 1 stays, then 1.5; together never more than the inflow."""
+    rules = [
+        {"rule": "inflow_share", "share": 0.4, "above": 1.0, "months": [3]},
+        {"rule": "constant", "discharge": 1.5},
+    ]
+    kept = {}
+    for way in ("sum", "priority"):
+        blocks = {"environmental_flow": rules, "environmental_flow_combination": way}
+        plant = twin.load(write(tmp_path, [1.0] * 365, **blocks))
+        for month, discharge in ((3, 6.0), (3, 2.0), (4, 6.0)):
+            kept[way, month, discharge] = twin.environmental_flow(plant, month, discharge)
+    assert kept == pytest.approx({
+        ("sum", 3, 6.0): 4.5, ("sum", 3, 2.0): 2.0, ("sum", 4, 6.0): 1.5,
+        ("priority", 3, 6.0): 3.0, ("priority", 3, 2.0): 1.4, ("priority", 4, 6.0): 1.5,
+    })  # fmt: skip
+
+
+def test_a_unit_behind_its_branch_solves_its_equations() -> None:
+    """Full discharge q = qr sqrt(h / hr) with h = H - k q^2; a share of it at its own head."""
+    one = unit(rated_discharge=2.0, rated_head=9.0, branch=0.25)
+    full = float(twin.full_discharge(one, 7.0))
+    assert full == pytest.approx(2.0 * math.sqrt((7.0 - 0.25 * full**2) / 9.0))
+    least = full * twin.opening_of_share(0.3, 0.25, 2.0, 9.0)
+    assert least == pytest.approx(0.3 * 2.0 * math.sqrt((7.0 - 0.25 * least**2) / 9.0))
+    assert float(one.behind_branch(7.0, full)) == pytest.approx(7.0 - 0.25 * full**2)
+
+
+def test_jets_close_where_fewer_give_more() -> None:
+    """By hand: at half of full discharge one of two jets is full, 0.8 against 0.6 of both."""
+    curve = twin.efficiency_curve([[0.25, 0.2], [0.5, 0.6], [1.0, 0.8]])
+    two = twin.efficiency_of_jets(curve, 2)
+    assert two(np.array([0.5, 0.25, 1.0])) == pytest.approx([0.8, 0.6, 0.8])
+    assert float(two(0.75)) == pytest.approx(float(curve(0.75)))
+
+
+def test_a_chart_is_straight_between_its_corners() -> None:
+    """By hand: the middle of four corners, and the nearest of them outside."""
+    table = {"heads": [2.0, 4.0], "discharges": [1.0, 3.0], "values": [[0.6, 0.8], [0.7, 0.9]]}
+    chart = twin.efficiency_chart(table)
+    assert chart(np.array([2.0, 0.5, 9.0]), np.array([3.0, 1.0, 9.0])) == pytest.approx(
+        [0.75, 0.6, 0.9]
+    )
+
+
+def test_a_limit_by_head_caps_the_output() -> None:
+    one = unit(limit=((2.0, 10e3), (4.0, 30e3)), capacity=25e3)
+    assert one.most(np.array([1.0, 3.0, 3.9])) == pytest.approx([10e3, 20e3, 25e3])
+    assert float(twin.unit_output(one, 1.0, 3.0)) == pytest.approx(20e3)
+
+
+def test_a_plant_starts_at_more_than_it_needs_to_run_on(tmp_path: Path) -> None:
+    """By hand: 4 m3/s at full, from 2 on it runs, from 3 on it starts; a gap stops it."""
+    values: list[float | str] = [2.5, 3.1, 2.5, 1.9, 2.5, 3.0, 2.0, "", 2.0, 3.5]
+    start = {"rated_discharge": 4.0, "minimum_discharge": 0.5, "starting_discharge": 0.75}
+    path = write(tmp_path, values * 37, turbines=[PLAIN_UNIT | start])
+    plant = twin.load(path)
+    first = min(plant.days)
+    waits = [(first + datetime.timedelta(days=k)) in plant.waiting for k in range(10)]
+    assert waits == [True, False, False, False, True, False, False, False, True, False]
+    assert (first + datetime.timedelta(days=10)) not in plant.waiting  # runs on from the day before
+
+
+def test_windows_of_dates_are_days_of_their_months() -> None:
+    windows = ["08-10 to 08-19", "12-24 to 01-06"]
+    shares = [
+        twin.share_in_windows(windows, datetime.date(2001, month, 3)) for month in (1, 8, 9, 12)
+    ]
+    assert shares == pytest.approx([6 / 31, 10 / 31, 0, 8 / 31])
+
+
 def test_outages_are_the_expectation_over_the_units(tmp_path: Path) -> None:
     """Binomial: both units needed all year, each up 0.9 of the time."""
     turbines = [PLAIN_UNIT | {"count": 2}]

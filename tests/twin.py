@@ -7,8 +7,8 @@ and to read the depth of a channel between 40 000 depths that were bisected once
 
 It reads site files whose quantities are bare numbers in the default units (m, m3/s, kW, km2, degC,
 fractions, `percent` in per cent) and a record `date,discharge` in m3/s with blanks for no value.
-It raises ValueError for what it does not know (pipes, trash racks, generator curves, duration
-tables, more than four units running together) instead of leaving it out.
+It raises ValueError for what it does not know (siphons, gaugings, duration tables, more than four
+units running together) instead of leaving it out.
 
 Its own accuracy, measured on the sites of twin_sites.py by halving all steps of the search
 (`fineness=2`): annual energy changes by 2e-6 with three units, by less than 1e-7 with one or two.
@@ -98,12 +98,36 @@ class Unit:
     kind: str
     rated_discharge: float  # m3/s
     rated_head: float  # m
-    minimum: float  # share of full discharge
+    minimum: float  # of full discharge, both at the head before its branch
     capacity: float  # W
     factor: float  # rho g x drive x generator; without the generator where it has a load curve
     efficiency: Callable[[Any], Any] = field(repr=False, compare=False)
     axis: float | None = None  # m
     generator: Callable[[Any], Any] | None = field(default=None, repr=False, compare=False)
+    limit: tuple[tuple[float, float], ...] = ()  # net head [m] and the most it gives [W]
+    start: float = 0.0  # share of full discharge at which it starts
+    branch: float = 0.0  # k of the head k q^2 lost on the way of this unit alone
+    chart: Callable[[Any, Any], Any] | None = field(default=None, repr=False, compare=False)
+
+    def behind_branch(self, head: Any, discharge: Any) -> Any:
+        """Net head [m] of the unit itself, from that before its branch."""
+        return np.maximum(head - self.branch * np.asarray(discharge) ** 2, 0.0)
+
+    def eta(self, discharge: Any, net: Any) -> Any:
+        """Turbine efficiency at a discharge [m3/s] and the net head of the unit itself [m]."""
+        if self.chart is not None:
+            return self.chart(discharge, net)
+        free = self.rated_discharge * np.sqrt(np.maximum(net, 1e-9) / self.rated_head)
+        if self.kind == "screw":
+            free = self.rated_discharge
+        return self.efficiency(np.clip(discharge / free, 0.0, 1.0))
+
+    def most(self, head: Any) -> Any:
+        """The most that the unit may give [W] at a net head [m]."""
+        if not self.limit:
+            return self.capacity
+        heads, powers = zip(*self.limit, strict=True)
+        return np.minimum(self.capacity, np.interp(head, heads, powers))
 
     def terminals(self, shaft: Any) -> Any:
         """Output [W] of what reaches the generator, its efficiency read at the output itself."""
@@ -120,7 +144,47 @@ def full_discharge(unit: Unit, head: Any) -> Any:
     head = np.maximum(head, 0.0)
     if unit.kind == "screw":
         return np.where(head > 0, unit.rated_discharge, 0.0)
-    return unit.rated_discharge * np.sqrt(head / unit.rated_head)
+    # behind its branch: q = qr sqrt((H - k q^2) / Hr), solved for q
+    rated_head = unit.rated_head + unit.branch * unit.rated_discharge**2
+    return unit.rated_discharge * np.sqrt(head / rated_head)
+
+
+def opening_of_share(share: float, branch: float, discharge: float, head: float) -> float:
+    """Discharge over that of full opening, both at one head before the branch.
+
+    share : of full discharge at the head behind the branch, which is higher the less is taken
+    discharge, head : rated
+    """
+    lost = branch * discharge**2 / head
+    return share * math.sqrt((1 + lost) / (1 + share**2 * lost))
+
+
+def efficiency_of_jets(curve: Callable[[Any], Any], jets: int) -> Callable[[Any], Any]:
+    """As many jets open as give the most; each takes its part of the discharge."""
+
+    def best(opening: Any) -> Any:
+        tried = []
+        for opened in range(1, jets + 1):
+            of_jet = np.asarray(opening, dtype=float) * jets / opened
+            tried.append(np.where(of_jet <= 1 + EQUAL, curve(np.minimum(of_jet, 1.0)), 0.0))
+        return np.max(tried, axis=0)
+
+    return best
+
+
+def efficiency_chart(table: dict[str, Any]) -> Callable[[Any, Any], Any]:
+    """Linear along the discharges of each head, then over the heads; constant outside."""
+    heads = table["heads"]
+
+    def at(discharge: Any, head: Any) -> Any:
+        rows = [np.interp(discharge, table["discharges"], row) for row in table["values"]]
+        found = rows[0]
+        for i in range(len(heads) - 1):
+            part = np.clip((np.asarray(head) - heads[i]) / (heads[i + 1] - heads[i]), 0, 1)
+            found = found + part * (rows[i + 1] - rows[i])
+        return found
+
+    return at
 
 
 def efficiency_curve(points: list[list[float]]) -> Callable[[Any], Any]:
@@ -141,8 +205,9 @@ def typical_curve(kind: str) -> list[list[float]]:
 def unit_output(unit: Unit, opening: Any, head: Any) -> Any:
     """Output [W] at an opening (q / q_full) and a net head [m]."""
     discharge = opening * full_discharge(unit, head)
-    shaft = unit.factor * discharge * head * unit.efficiency(opening)
-    return np.minimum(unit.terminals(shaft), unit.capacity)
+    net = unit.behind_branch(head, discharge)
+    shaft = unit.factor * discharge * net * unit.eta(discharge, net)
+    return np.minimum(unit.terminals(shaft), unit.most(net))
 
 
 Head = Callable[[Unit, Any], Any]  # (unit, total discharge) -> net head, 0 where not admissible
@@ -330,6 +395,7 @@ class Plant:
     units: list[Unit] = field(default_factory=list)
     remembered: dict[Any, Any] = field(default_factory=dict)
     fineness: int = 1
+    waiting: set[datetime.date] = field(default_factory=set)
 
     def __post_init__(self) -> None:
         self.falling = sorted(self.days.values(), reverse=True)
@@ -401,8 +467,8 @@ class Water:
 
 
 def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
-    """The largest of the rules, never more than the inflow."""
-    largest = 0.0
+    """The largest, the sum or the first of the rules that hold, never more than the inflow."""
+    values = [0.0]
     for rule in plant.site.get("environmental_flow") or []:
         kind = rule["rule"]
         if month not in rule.get("months", range(1, 13)):
@@ -423,8 +489,11 @@ def environmental_flow(plant: Plant, month: int, discharge: float) -> float:
             value = [kept for inflow, kept in rule["steps"] if inflow <= discharge][-1]
         else:
             raise ValueError(f"rule {kind} is not known")
-        largest = max(largest, value)
-    return min(discharge, largest)
+        values.append(value)
+    way = plant.site.get("environmental_flow_combination", "largest")
+    if way == "largest":
+        return min(discharge, max(values))
+    return min(discharge, sum(values) if way == "sum" else [*values[1:], 0.0][0])
 
 
 def share_water(plant: Plant, month: int, discharge: float) -> Water:
@@ -529,9 +598,14 @@ BARS = {"rectangular": 2.42, "rounded_upstream": 1.83, "rounded_both": 1.67, "ci
 
 def waterway_loss(plant: Plant, total: Any, month: int = 1) -> Any:
     """Head lost [m] between headwater and units at the discharge of the whole plant."""
+    return losses(plant, plant.site.get("waterway") or [], total, month)
+
+
+def losses(plant: Plant, parts: list[dict[str, Any]], total: Any, month: int = 1) -> Any:
+    """Head lost [m] in parts of a way at a discharge [m3/s]."""
     loss = 0.0
     total = np.asarray(total, dtype=float)
-    for part in plant.site.get("waterway") or []:
+    for part in parts:
         if "loss_coefficient" in part:
             loss = loss + part["loss_coefficient"] * total**2
         elif "pipe" in part:
@@ -680,22 +754,33 @@ def make_units(plant: Plant) -> list[Unit]:
         float(load_curve(1.0)) if load_curve else electrical(plant, "generator_efficiency")
     )
     factor = plant.density * plant.gravity * drive * at_full_load
-    curves = []
+    curves: list[Any] = []
+    charts: list[Any] = []
     for group in groups:
         points = group.get("efficiency", "typical")
-        curves.append(
-            efficiency_curve(typical_curve(group["type"]) if points == "typical" else points)
-        )
+        charts.append(efficiency_chart(points) if isinstance(points, dict) else None)
+        points = typical_curve(group["type"]) if isinstance(points, str | dict) else points
+        curve = efficiency_curve(points)
+        curves.append(efficiency_of_jets(curve, group["jets"]) if "jets" in group else curve)
+    branches = [0.0] * len(groups)
+
+    def best_at_rated(i: int) -> float:
+        return float(charts[i](rated_q[i], rated_h[i]) if charts[i] else curves[i](1.0))
+
     rated_q = [group.get("rated_discharge", 0.0) for group in groups]
     rated_h = [group.get("rated_head", 0.0) for group in groups]
     for _ in range(300):  # discharge and head, each from the other, until they rest
         total = sum(g.get("count", 1) * q for g, q in zip(groups, rated_q, strict=True))
         before = list(rated_q)
         for i, group in enumerate(groups):
+            if rated_q[i] > 0:  # the friction of a pipe is taken at rated discharge
+                own = losses(plant, group.get("waterway") or [], rated_q[i])
+                branches[i] = float(own) / rated_q[i] ** 2
             if "rated_head" not in group:
                 rated_h[i] = derived_rated_head(plant, total, group.get("axis_level"))
+                rated_h[i] -= branches[i] * rated_q[i] ** 2
             if "rated_discharge" not in group:
-                power = factor * rated_h[i] * float(curves[i](1.0))
+                power = factor * rated_h[i] * best_at_rated(i)
                 rated_q[i] = group["unit_capacity"] * 1000 / power
         if max(abs(a - b) for a, b in zip(before, rated_q, strict=True)) < 1e-13 * max(rated_q):
             break
@@ -703,10 +788,14 @@ def make_units(plant: Plant) -> list[Unit]:
         raise ValueError("no rated discharge gives the unit capacity")
     units = []
     for i, group in enumerate(groups):
-        full_output = factor * rated_q[i] * rated_h[i] * float(curves[i](1.0))
+        full_output = factor * rated_q[i] * rated_h[i] * best_at_rated(i)
         capacity = group["unit_capacity"] * 1000 if "unit_capacity" in group else full_output
         minimum = group.get("minimum_discharge")
-        minimum = MINIMUM[group["type"]] if minimum is None else minimum
+        minimum = MINIMUM[group["type"]] / group.get("jets", 1) if minimum is None else minimum
+        shares = (minimum, max(group.get("starting_discharge", 0.0), minimum))
+        minimum, start = (
+            opening_of_share(share, branches[i], rated_q[i], rated_h[i]) for share in shares
+        )
         unit = Unit(
             i,
             group["type"],
@@ -718,6 +807,10 @@ def make_units(plant: Plant) -> list[Unit]:
             curves[i],
             group.get("axis_level"),
             load_curve,
+            tuple((head, 1000 * power) for head, power in group.get("output_limit") or []),
+            start,
+            branches[i],
+            charts[i],
         )
         units += [unit] * group.get("count", 1)
     return units
@@ -750,14 +843,15 @@ def run_units(plant: Plant, units: list[Unit], heads: HeadsOf, offered: float) -
     gross, net, etas, outputs, full_power = [], [], [], [], False
     for unit, q in running:
         g, h = (float(x) for x in heads(unit.axis, total))
-        opening = min(max(q / float(full_discharge(unit, h)), unit.minimum), 1.0)
-        eta = float(unit.efficiency(opening))
+        h = float(unit.behind_branch(h, q))
+        eta = float(unit.eta(q, h))
         free_output = float(unit.terminals(unit.factor * q * h * eta))
         gross.append(g)
         net.append(h)
         etas.append(eta)
-        outputs.append(min(free_output, unit.capacity))
-        full_power = full_power or free_output >= unit.capacity * (1 - AT_CAPACITY)
+        most = float(unit.most(h))
+        outputs.append(min(free_output, most))
+        full_power = full_power or free_output >= most * (1 - AT_CAPACITY)
     return State([q for _, q in running], gross, net, etas, outputs, full_power)
 
 
@@ -770,19 +864,59 @@ def stopped_by_river(plant: Plant, discharge: float) -> bool:
     return limit is not None and discharge > limit
 
 
+def waiting_days(plant: Plant) -> set[datetime.date]:
+    """Days on which the plant stands as it stood the day before and lacks the water to start."""
+    if all(unit.start <= unit.minimum for unit in plant.units):
+        return set()
+    day, last, running, found = min(plant.days), max(plant.days), False, set()
+    while day <= last:
+        could = starts = False
+        if day in plant.days:
+            could, starts = could_run_or_start(plant, day)
+        if could and not (running or starts):
+            found.add(day)
+        running = could and (running or starts)
+        day += datetime.timedelta(days=1)
+    return found
+
+
+def could_run_or_start(plant: Plant, day: datetime.date) -> tuple[bool, bool]:
+    """Whether the plant could run on this day if it ran before, and whether it could start."""
+    discharge = plant.days[day]
+    water = share_water(plant, day.month, discharge)
+    key = ("start", discharge, water)
+    if key not in plant.remembered:
+        could = starts = False
+        if not stopped_by_river(plant, discharge):
+            heads = heads_of_day(plant, discharge, water)
+            everyone = tuple(range(len(plant.units)))
+            could = state_of(plant, discharge, water, heads, everyone).total > 0
+            for unit in plant.units:
+                grid = np.linspace(0, water.offered, 20001)[1:]
+                net = heads(unit.axis, grid)[1]
+                opened = unit.start * full_discharge(unit, net)
+                starts = starts or bool(((net > 0) & (grid >= opened * (1 - EQUAL))).any())
+        plant.remembered[key] = could, starts
+    return plant.remembered[key]
+
+
 def rows_of_day(
-    plant: Plant, discharge: float, water: Water, available: tuple[int, ...] | None
+    plant: Plant,
+    discharge: float,
+    water: Water,
+    available: tuple[int, ...] | None,
+    waiting: bool = False,
 ) -> dict[str, float]:
     """Power [W] of each ledger step on a day; `available` lists the units that are not out."""
     everyone = tuple(range(len(plant.units)))
     available = everyone if available is None else available
-    key = (discharge, water, available)
+    key = (discharge, water, available, waiting)
     if key in plant.remembered:
         return plant.remembered[key]
     heads = heads_of_day(plant, discharge, water)
     stopped = stopped_by_river(plant, discharge)
     everything = state = STANDING
-    if not stopped:
+    if not stopped and not waiting:
         everything = state_of(plant, discharge, water, heads, everyone)
         state = state_of(plant, discharge, water, heads, available)
     rows = dict.fromkeys(STEPS, 0.0)
@@ -867,7 +1001,9 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
     planned = operation.get("planned_outage")
     everyone = tuple(range(len(plant.units)))
     chance = 0.0
-    if planned and day.month in planned["months"]:
+    if planned and "dates" in planned:
+        chance = share_in_windows(planned["dates"], day) / len(everyone)
+    elif planned and day.month in planned["months"]:
         year = water_year(plant, day)
         spread = sum(
             calendar.monthrange(y, m)[1]
@@ -877,11 +1013,13 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
         chance = planned["days"] / spread
     if chance * len(everyone) > 1:
         raise ValueError("planned outages do not fit into the months named")
-    if rate == 0 and chance == 0:
+    stand = share_in_windows((operation.get("standstill") or {}).get("dates") or [], day)
+    if rate == 0 and chance == 0 and stand == 0:
         return [(1.0, None)]
     cases = [(1 - chance * len(everyone), everyone)]
     cases += [(chance, tuple(i for i in everyone if i != out)) for out in everyone]
-    result: list[tuple[float, tuple[int, ...] | None]] = []
+    result: list[tuple[float, tuple[int, ...] | None]] = [(stand, ())] if stand else []
+    cases = [(probability * (1 - stand), left) for probability, left in cases]
     for probability, left in cases:
         for up in itertools.product([True, False], repeat=len(left)):
             share = math.prod(1 - rate if u else rate for u in up)
@@ -889,6 +1027,19 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
                 kept = tuple(i for i, u in zip(left, up, strict=True) if u)
                 result.append((probability * share, kept))
     return result
+
+
+def share_in_windows(windows: list[str], day: datetime.date) -> float:
+    """The share of the days of this day's month that lie in windows "MM-DD to MM-DD"."""
+    length = calendar.monthrange(day.year, day.month)[1]
+    within = 0
+    for number in range(1, length + 1):
+        name = f"{day.month:02d}-{number:02d}"
+        for window in windows:
+            first, last = window.split(" to ")
+            inside = first <= name <= last if first <= last else name >= first or name <= last
+            within += inside
+    return within / length
 
 
 # ---------------------------------------------------------------- years
@@ -920,6 +1071,7 @@ def load(path: Path | str, record: Path | str | None = None, fineness: int = 1) 
     place = site.get("site") or {}
     plant = Plant(site, days, water_density(place), local_gravity(place), fineness=fineness)
     plant.units = make_units(plant)
+    plant.waiting = waiting_days(plant)
     return plant
 
 
@@ -948,7 +1100,8 @@ def month_energy(plant: Plant, year: int, month: int) -> dict[str, float]:
     for day in days:
         water = share_water(plant, month, plant.days[day])
         for probability, available in availability(plant, day):
-            rows = rows_of_day(plant, plant.days[day], water, available)
+            waiting = day in plant.waiting
+            rows = rows_of_day(plant, plant.days[day], water, available, waiting)
             for step in STEPS:
                 sums[step] += probability * rows[step]
     return {step: sums[step] / len(days) * hours / 1e6 for step in STEPS}

@@ -594,6 +594,255 @@ electrical: {generator_efficiency: 0.93}
     return path
 
 
+def output_limited_by_head(folder: Path) -> Path:
+    """A generator that must give less at low heads and at very high ones; head falls in floods."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Yarrow Lock}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.5}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.0], [10, 38.0], [50, 39.9]]}
+waterway:
+  - {loss_coefficient: 0.003}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 5.0
+    rated_head: 3.0
+    unit_capacity: 125
+    output_limit: [[1.5, 28], [2.6, 96], [3.2, 118], [3.7, 112]]
+  - count: 1
+    type: francis
+    rated_discharge: 2.5
+    rated_head: 3.0
+    unit_capacity: 60
+    efficiency: [[0.3, 0.6], [0.6, 0.84], [0.85, 0.9], [1.0, 0.87]]
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 37, "1999-10-01", "2001-09-30", 7.0, 0.9)
+    return path
+
+
+def branches_of_units(folder: Path) -> Path:
+    """Unlike units, each behind a pipe and an outlet of its own, beside a shared loss."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Comfrey Leat, water_temperature: 8}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.2}
+head:
+  headwater: {level: 140.0}
+  tailwater: {table: [[0, 118.0], [4, 118.4], [20, 119.5]]}
+waterway:
+  - {loss_coefficient: 0.08}
+turbines:
+  - count: 1
+    type: francis
+    rated_discharge: 2.2
+    minimum_discharge: 0.35
+    starting_discharge: 0.45
+    waterway:
+      - {pipe: {length: 60, diameter: 0.9, roughness: 0.0003, minor_losses: 0.8}}
+      - {exit: {area: 1.1}}
+  - count: 1
+    type: kaplan
+    rated_discharge: 1.1
+    rated_head: 19.5
+    unit_capacity: 165
+    waterway:
+      - {loss_coefficient: 1.6}
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 40, "1999-10-01", "2001-09-30", 2.4, 0.9)
+    return path
+
+
+def jets_in_turn(folder: Path) -> Path:
+    """Two Pelton units of three jets that close one after another."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Saxifrage Fall}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.05}
+head:
+  headwater: {level: 600.0}
+  tailwater: {table: [[0, 478.0], [3, 479.2], [8, 480.4]]}
+waterway:
+  - {loss_coefficient: 14.0}
+turbines:
+  - count: 2
+    type: pelton
+    jets: 3
+    rated_discharge: 0.35
+    rated_head: 112.0
+    axis_level: 480.0
+    efficiency: [[0.1, 0.55], [0.2, 0.74], [0.4, 0.87], [0.7, 0.9], [1.0, 0.86]]
+electrical: {generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 41, "1999-10-01", "2001-09-30", 0.45, 0.9)
+    return path
+
+
+def chart_over_heads(folder: Path) -> Path:
+    """A maker's chart of a Kaplan unit whose head falls in floods, beside a small Francis unit."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Tansy Weir}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.5}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.2], [10, 38.0], [50, 39.6]]}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 5.0
+    rated_head: 3.2
+    unit_capacity: 122
+    efficiency:
+      heads: [1.8, 2.6, 3.4]
+      discharges: [0.8, 2.0, 3.5, 5.0]
+      values: [[0.58, 0.74, 0.80, 0.74], [0.64, 0.82, 0.88, 0.84], [0.66, 0.86, 0.91, 0.88]]
+  - count: 1
+    type: francis
+    rated_discharge: 2.0
+    rated_head: 3.2
+electrical: {drive_efficiency: 0.98, generator_efficiency: 0.94}
+""",
+    )
+    write_record(folder / "flow.csv", 42, "1999-10-01", "2001-09-30", 6.0, 0.9)
+    return path
+
+
+def slow_to_start(folder: Path) -> Path:
+    """Two unlike units that start at more water than they need, a gap, floods that stop them."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Burdock Race}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.4}
+  - {rule: constant, discharge: 0.7, months: [5, 6, 7, 8]}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.5], [10, 37.9], [50, 39.2]]}
+waterway:
+  - {loss_coefficient: 0.004}
+turbines:
+  - count: 1
+    type: francis
+    rated_discharge: 4.0
+    rated_head: 3.2
+    minimum_discharge: 0.35
+    starting_discharge: 0.6
+  - count: 1
+    type: francis
+    rated_discharge: 3.0
+    rated_head: 3.2
+    minimum_discharge: 0.4
+    starting_discharge: 0.7
+electrical: {drive_efficiency: 0.97, generator_efficiency: 0.93, own_use: 1.0}
+operation: {shutdown_above: 18, forced_outage_rate: 0.02}
+""",
+    )
+    spells = (("2000-06-03", 3), ("2001-11-11", 1))
+    write_record(folder / "flow.csv", 39, "1999-10-01", "2002-03-20", 3.2, 0.9, blank_spells=spells)
+    return path
+
+
+def outages_by_dates(folder: Path) -> Path:
+    """Two units that take turns in a window of late winter, and a standstill over New Year."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Sorrel Reach}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.5], [10, 37.9], [50, 39.2]]}
+turbines:
+  - count: 2
+    type: kaplan
+    rated_discharge: 2.5
+    rated_head: 3.2
+electrical: {drive_efficiency: 0.97, generator_efficiency: 0.93}
+operation:
+  planned_outage: {dates: [02-20 to 03-11, 08-03 to 08-09]}
+  standstill: {dates: [12-24 to 01-06]}
+  forced_outage_rate: 0.02
+""",
+    )
+    write_record(folder / "flow.csv", 38, "1999-10-01", "2001-09-30", 4.0, 0.8)
+    return path
+
+
+def added_rules(folder: Path) -> Path:
+    """Rules that add up, and together ask for more than half of what comes in summer."""
+    return _combined(folder, "sum")
+
+
+def first_of_rules(folder: Path) -> Path:
+    """In each month the first rule that holds."""
+    return _combined(folder, "priority")
+
+
+def _combined(folder: Path, way: str) -> Path:
+    path = write_site(
+        folder,
+        f"""\
+format: 1
+site: {{name: Teasel Sluice}}
+discharge:
+  record: {{file: flow.csv, unit: m3/s}}
+environmental_flow_combination: {way}
+environmental_flow:
+  - {{rule: inflow_share, share: 0.3, above: 0.5, months: [5, 6, 7, 8, 9]}}
+  - {{rule: constant, discharge: 0.4, months: [3, 4, 5, 6]}}
+  - {{rule: steps, steps: [[0, 0.2], [2.5, 0.5]], months: [1, 2, 3, 6, 7]}}
+  - {{rule: exceedance, percent: 90}}
+abstractions:
+  - {{name: fish pass, discharge: 0.3, counts_as_environmental_flow: true}}
+head:
+  headwater: {{level: 58.0}}
+  tailwater: {{table: [[0, 52.1], [30, 53.4]]}}
+turbines:
+  - count: 1
+    type: kaplan
+    rated_discharge: 3.0
+    rated_head: 5.6
+electrical: {{generator_efficiency: 0.93}}
+""",
+    )
+    write_record(folder / "flow.csv", 36, "1999-10-01", "2002-09-30", 3.0, 0.9)
+    return path
+
+
 def outages(folder: Path) -> Path:
     """Planned days in late summer and forced outages of two unequal Kaplan units."""
     path = write_site(
@@ -645,6 +894,14 @@ SITES: dict[str, Callable[[Path], Path]] = {
         calendar_years_and_transfer,
         generator_load_curve,
         rules_of_permits,
+        output_limited_by_head,
+        outages_by_dates,
+        slow_to_start,
+        branches_of_units,
+        jets_in_turn,
+        chart_over_heads,
+        added_rules,
+        first_of_rules,
         penstock_and_rack,
         water_joining_below,
         outages,

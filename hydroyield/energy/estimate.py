@@ -309,6 +309,7 @@ def estimate_energy(scheme: Scheme) -> Estimate:
         scheme.rules.season_of_month,
         scheme.year_start_month,
         scheme.minimum_month_coverage,
+        scheme.waiting,
     )
     return _run(scheme, cells, left_out)
 
@@ -319,10 +320,12 @@ def condensed(
     season_of_month: NDArray[np.int64],
     year_start_month: int,
     minimum_month_coverage: float,
+    waiting: NDArray[np.bool_] | None = None,
 ) -> tuple[Cells, dict[str, str]]:
     """The states of the river over the years that can be used, and why others cannot.
 
     The arguments are as in `Scheme`; season_of_month as in `WaterRules`, (12,).
+    waiting : (n,) days on which a plant that stands waits to start; None where it never does
 
     Returns the cells and {name of the year: reason}. Raises NoUsableYearError.
     """
@@ -333,7 +336,7 @@ def condensed(
     used, left_out = usable_years(months, minimum_month_coverage, year_start_month)
     if not used.any():
         raise NoUsableYearError(left_out)
-    return condense(discharge, calendar, months, used, season_of_month), left_out
+    return condense(discharge, calendar, months, used, season_of_month, waiting), left_out
 
 
 def _run(scheme: Scheme, cells: Cells, left_out: dict[str, str]) -> Estimate:
@@ -353,7 +356,7 @@ def _state(scheme: Scheme, cells: Cells, counts: tuple[int, ...], chance: Floats
         standing = scheme.net_power(np.zeros(cells.discharge.size))
         return PlantState(counts, chance, weight, None, standing)
     part = scheme.with_units(counts)
-    run = part.operate(cells.discharge, cells.season)
+    run = part.operate(cells.discharge, cells.season, cells.waiting)
     return PlantState(counts, chance, weight, run, part.net_power(run.output))
 
 

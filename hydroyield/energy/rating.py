@@ -16,7 +16,7 @@ from hydroyield.errors import ComputationError
 from hydroyield.hydraulics import Heads
 from hydroyield.hydraulics.heads import FREE
 from hydroyield.hydraulics.losses import Waterway
-from hydroyield.powerhouse import EfficiencyCurve, HillChart, JetCurve, UnitGroup
+from hydroyield.powerhouse import EfficiencyCurve, HillChart, JetCurve, OutputLimit, UnitGroup
 from hydroyield.river import WaterRules
 
 Floats = NDArray[np.float64]
@@ -51,6 +51,8 @@ class UnitSpecification:
     curve: EfficiencyCurve | JetCurve | HillChart
     axis_level: float | None = None
     branch: Waterway = FREE
+    output_limit: OutputLimit | None = None
+    starting_share: float = 0.0
 
     def branch_coefficient(self, discharge: float) -> float:
         """k of h = k q^2 on the way of one unit, at its rated discharge [m per (m3/s)^2]."""
@@ -139,6 +141,7 @@ def _rated(number: int, unit: UnitSpecification, total: float, setting: Setting)
     return UnitGroup(
         unit.count, unit.type, discharge, head, capacity,
         unit.minimum_share, unit.curve, unit.axis_level, unit.branch_coefficient(discharge),
+        unit.output_limit, unit.starting_share,
     )  # fmt: skip
 
 

@@ -8,12 +8,14 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
+from hydroyield.energy.starting import waiting_days
 from hydroyield.hydraulics import Heads, HeadState
 from hydroyield.powerhouse import Dispatcher, HeadLines, Operation, Outages, Plant, operate
-from hydroyield.river import WaterRules, quantile
+from hydroyield.river import Calendar, WaterRules, quantile
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Bools = NDArray[np.bool_]
 
 ALWAYS = Outages()
 
@@ -87,13 +89,44 @@ class Scheme:
         ]
         return Dispatcher(plant, np.maximum(0.0, np.stack(seen)))
 
-    def operate(self, discharge: Floats, season: Ints) -> Operation:
-        """How the plant runs at river discharges [m3/s] and seasons, both (n,)."""
+    @property
+    def waits_to_start(self) -> bool:
+        """Whether a plant that stands needs more water to start than to run on."""
+        return any(group.starting_share > group.minimum_share for group in self.plant.groups)
+
+    @cached_property
+    def waiting(self) -> Bools | None:
+        """(n,) days on which the plant, all units in service, stands and waits for water to start.
+
+        None where it never does, or where days are not known. A day without a value, one on which
+        it cannot run and one of a month in which it is closed leave it standing.
+        """
+        if self.dates is None or not self.waits_to_start:
+            return None
+        month = Calendar.of(self.dates, self.year_start_month).month
+        known = ~np.isnan(self.discharge) & ~np.isin(month, self.outages.closed)
+        distinct, rank = np.unique(self.discharge[known], return_inverse=True)
+        season = self.rules.season_of_month[month[known] - 1]
+        pairs, place = np.unique(season * distinct.size + rank, return_inverse=True)
+        river, season = distinct[pairs % distinct.size], pairs // distinct.size
+        run = self.operate(river, season)
+        reach = np.minimum(run.offered, run.fully_open)
+        state = self.head_state(river, season)
+        enough = self.dispatcher.can_start(state, run.turbined, reach)
+        runs, starts = np.zeros((2, known.size), dtype=np.bool_)
+        runs[known], starts[known] = (run.turbined > 0)[place], enough[place]
+        return waiting_days(runs, starts)
+
+    def operate(self, discharge: Floats, season: Ints, waiting: Bools | None = None) -> Operation:
+        """How the plant runs at river discharges [m3/s] and seasons, both (n,).
+
+        waiting : (n,) it stands and waits for water to start; None where it does not
+        """
         limit = self.plant.shutdown_above
         stopped = np.zeros(discharge.shape, bool) if limit is None else discharge > limit
         offered = self.rules.offered(discharge, season)
         state = self.head_state(discharge, season)
-        run = operate(self.dispatcher, state, offered, stopped)
+        run = operate(self.dispatcher, state, offered, stopped, waiting)
         lost = self._lost_in_branches(state, run.turbined)
         return run if lost is None else replace(run, net_head=run.net_head - lost)
 

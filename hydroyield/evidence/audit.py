@@ -10,6 +10,7 @@ from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.evidence.doubts import Doubt, Rerun, doubt_checks
 from hydroyield.evidence.machines import machine_checks
+from hydroyield.evidence.metering import metering_checks
 from hydroyield.evidence.other_days import day_checks
 from hydroyield.evidence.outages import outage_checks
 from hydroyield.evidence.waterway import waterway_checks
@@ -18,7 +19,7 @@ from hydroyield.hydraulics.levels import range_covered
 from hydroyield.hydraulics.rating_fit import FittedRating
 from hydroyield.record import Record
 from hydroyield.river.presets import PRESETS
-from hydroyield.site.assembly import Assembled
+from hydroyield.site.assembly import Assembled, rule_months
 from hydroyield.site.notes import left_out, without_source
 from hydroyield.site.reading import SiteDescription
 from hydroyield.site.river_assembly import river_checks
@@ -49,8 +50,10 @@ def audit(
         *_levels(estimate),
         *_left_out(site),
         *_presets(site),
+        *_idle_rules(site),
         *waterway_checks(site.model, estimate),
         *outage_checks(site, estimate),
+        *metering_checks(site, estimate),
         *machine_checks(site, assembled, estimate),
         _energy(estimate),
         _capacity_factor(estimate),
@@ -127,6 +130,17 @@ def _presets(site: SiteDescription) -> Iterator[Check]:
                 "preset_rule", "warn", None, None,
                 f"The rule {rule.name} is an example ({PRESETS[rule.name].source}), not the law of "
                 "the day and not a permit; ask the authority.",
+            )  # fmt: skip
+
+
+def _idle_rules(site: SiteDescription) -> Iterator[Check]:
+    """By priority a rule may never have its turn."""
+    for number, months in enumerate(rule_months(site.model)):
+        if not months:
+            yield Check(
+                "rule_never_holds", "warn", None, None,
+                f"environmental_flow[{number}] never holds: rules before it hold in all of its "
+                "months. Move it up, limit their months, or take it out.",
             )  # fmt: skip
 
 

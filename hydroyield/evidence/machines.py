@@ -4,16 +4,19 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+import numpy as np
+
 from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.powerhouse import HillChart, UnitGroup, machine_types
 from hydroyield.powerhouse.types import SMALL_MACHINE
-from hydroyield.quantities import W_PER_KW
+from hydroyield.quantities import HOURS_PER_DAY, W_PER_KW
 from hydroyield.site.assembly import Assembled
 from hydroyield.site.reading import SiteDescription
 
 HEAD_BAND = (0.75, 1.15)  # of rated head, where a curve for one head still holds (common practice)
 LARGEST_SHARE_OUTSIDE = 0.1  # of the energy, made outside that band
+LITTLE_LESS = 1e-3  # share of the capacity, by which a drawn limit may miss it
 OVERSIZED_GENERATOR = 1.1  # of what the turbine gives at its rated point
 
 
@@ -25,11 +28,15 @@ def machine_checks(
         label = f"turbines[{number}] ({group.count} x {group.type})"
         typical = site.model.turbines[number].efficiency in (None, "typical")
         yield _generator(label, group, estimate)
+        if group.output_limit is not None:
+            yield _limit_at_rated_head(label, group)
         yield from _against_type(label, group, typical)
         if isinstance(group.curve, HillChart):
             yield _head_of_chart(label, group.curve, estimate)
         else:
             yield _head_band(label, group, estimate)
+    if estimate.scheme.waits_to_start:
+        yield _waiting(estimate)
     yield _rated_state(assembled)
 
 
@@ -47,6 +54,22 @@ def _generator(label: str, group: UnitGroup, estimate: Estimate) -> Check:
         f"{label}: a capacity of {group.unit_capacity / W_PER_KW:.4g} kW is {ratio:.2f} times what "
         f"the turbine gives at its rated point ({gives / W_PER_KW:.4g} kW); the capacity factor is "
         "then low by choice. Compare rated head, rated discharge and unit capacity.",
+    )
+
+
+def _limit_at_rated_head(label: str, group: UnitGroup) -> Check:
+    """A capacity that the limit by head forbids at rated head makes the capacity factor low."""
+    most = float(group.most_output(np.array(group.rated_head))) / W_PER_KW
+    capacity = group.unit_capacity / W_PER_KW
+    return warn_unless(
+        "output_limit_at_rated_head",
+        most >= capacity * (1 - LITTLE_LESS),
+        most,
+        capacity,
+        f"{label}: the output limit allows the capacity at rated head.",
+        f"{label}: the output limit allows only {most:.4g} kW of the capacity of {capacity:.4g} kW "
+        "at rated head; the capacity factor counts the latter. Compare output_limit and "
+        "unit_capacity.",
     )
 
 
@@ -128,6 +151,22 @@ def _head_of_chart(label: str, chart: HillChart, estimate: Estimate) -> Check:
         LARGEST_SHARE_OUTSIDE,
         f"{words}.",
         f"{words}, where the nearest row is held. Ask the maker for more heads.",
+    )
+
+
+def _waiting(estimate: Estimate) -> Check:
+    """What the starting discharge costs in days, or that it cannot be known."""
+    waiting = estimate.cells.waiting
+    days = None if waiting is None else estimate.cells.weight[waiting].sum() / HOURS_PER_DAY
+    return warn_unless(
+        "starting_discharge",
+        days is not None,
+        None if days is None else float(days),
+        None,
+        f"The plant stands on {days or 0:.3g} days a year on which it could run on but waits for "
+        "its starting discharge.",
+        "starting_discharge is left aside: a duration table does not say which day follows which, "
+        "so that units start at their minimum. Use a record to see what it costs.",
     )
 
 

@@ -63,6 +63,8 @@ def power_of_days(energy: Estimate) -> Floats:
     rest = np.where(known, np.nan, scheme.discharge)
     power = _power(energy, rest, calendar.month)
     power[known] = energy.net_power[cells.cell_of_day]
+    if scheme.waiting is not None:
+        power[scheme.waiting & ~known] = -scheme.plant.electrical.imported
     return power
 
 
@@ -101,6 +103,8 @@ def _steps(record: Record, factor: float, energy: Estimate) -> Check:
     kept = (inside >= 0) & (inside < by_step.size)
     by_step[inside[kept]] = means[kept]
     by_day = power_of_days(energy)
+    if scheme.waiting is not None:  # steps within a day know no day before
+        by_day[scheme.waiting] = np.nan
     both = ~np.isnan(by_step) & ~np.isnan(by_day)
     whole = float(by_day[both].sum())
     apart = float(by_step[both].sum()) / whole - 1 if whole else 0.0

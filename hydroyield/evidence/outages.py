@@ -10,10 +10,10 @@ import numpy as np
 from hydroyield.checks import Check, warn_unless
 from hydroyield.energy import Estimate
 from hydroyield.energy.estimate import cost_of_planned_days, with_outages
-from hydroyield.powerhouse import Spread
+from hydroyield.powerhouse import Dated, Spread
+from hydroyield.powerhouse.outages import SHORTEST
 from hydroyield.quantities import WH_PER_MWH
 from hydroyield.river.years import MONTH_NAMES
-from hydroyield.site.outage_assembly import SHORTEST
 from hydroyield.site.reading import SiteDescription
 
 USUAL_UNAVAILABILITY = 0.01  # of the energy; less is seldom reached (common practice)
@@ -23,7 +23,7 @@ DEAR = 0.002  # of the annual energy that other months would spare
 def with_placed_outage(site: SiteDescription, energy: Estimate) -> Estimate:
     """The estimate with its planned days in the months that cost least, where none are named."""
     stated, planned = site.model.operation.planned_outage, energy.scheme.outages.planned
-    if stated is None or planned is None or stated.months is not None:
+    if stated is None or stated.months is not None or not isinstance(planned, Spread):
         return energy
     months = cheapest_months(energy, planned)
     return with_outages(
@@ -31,7 +31,7 @@ def with_placed_outage(site: SiteDescription, energy: Estimate) -> Estimate:
     )
 
 
-def cheapest_months(energy: Estimate, planned: Spread) -> tuple[int, ...]:
+def cheapest_months(energy: Estimate, planned: Spread | Dated) -> tuple[int, ...]:
     """Months in which the planned days of all units fit and cost least, rising."""
     room, needed = 0.0, planned.days * sum(energy.states[0].counts)
     chosen = []
@@ -66,13 +66,15 @@ def _unavailability(energy: Estimate) -> Check:
     )
 
 
-def _months(site: SiteDescription, energy: Estimate, planned: Spread) -> Check:
-    cost = cost_of_planned_days(energy) * planned.days * sum(energy.states[0].counts)
+def _months(site: SiteDescription, energy: Estimate, planned: Spread | Dated) -> Check:
+    cost = cost_of_planned_days(energy) * sum(energy.states[0].counts)
     best = cheapest_months(energy, planned)
-    named, least = (float(_spread(cost, months)) for months in (planned.months, best))
+    by_month = (planned.by_month, Spread(planned.days, best).by_month)
+    named, least = (float((cost * days).sum()) for days in by_month)
     spared = (named - least) / WH_PER_MWH
     stated = site.model.operation.planned_outage
-    placed = stated is not None and stated.months is None
+    placed = stated is not None and stated.months is None and stated.dates is None
+    remedy = "Move them." if isinstance(planned, Dated) else "Move them, or leave `months:` out."
     share = spared / energy.mean_annual_energy_mwh if energy.mean_annual_energy_mwh else 0.0
     words = (
         f"The planned days fall into {_names(planned.months)}"
@@ -85,15 +87,8 @@ def _months(site: SiteDescription, energy: Estimate, planned: Spread) -> Check:
         share,
         DEAR,
         f"{words}.",
-        f"{words}; in {_names(best)} they would take {least / WH_PER_MWH:.3g} MWh. Move them, or "
-        "leave `months:` out.",
+        f"{words}; in {_names(best)} they would take {least / WH_PER_MWH:.3g} MWh. {remedy}",
     )
-
-
-def _spread(cost: np.ndarray, months: tuple[int, ...]) -> float:
-    """Mean cost over the days of some months."""
-    days = np.array([SHORTEST[month - 1] for month in months])
-    return float((cost[np.array(months) - 1] * days).sum() / days.sum())
 
 
 def _names(months: tuple[int, ...]) -> str:

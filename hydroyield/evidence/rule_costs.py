@@ -13,7 +13,8 @@ def rule_costs(site: SiteDescription, energy: Estimate) -> tuple[float, ...]:
     """Energy that each rule costs beside the others, and then all of them together [MWh a year].
 
     Each is the energy without it less that with it. Rules overlap, so that the costs need not add
-    up: a rule that is never the largest costs nothing.
+    up: a rule that is never the largest costs nothing. By priority another rule takes the place of
+    one that is gone, which may keep more water, so that a cost may be negative.
     """
     rules = site.model.environmental_flow
     if not rules:

@@ -90,4 +90,6 @@ def _as_type(group: UnitGroup, kind: MachineType, energy: Estimate) -> UnitGroup
         minimum_share=kind.minimum_discharge,
         unit_capacity=max(output, 0.001 * W_PER_KW),
         branch=branch,
+        output_limit=None,
+        starting_share=0.0,
     )

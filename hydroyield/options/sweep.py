@@ -190,10 +190,11 @@ def scales(scheme: Scheme) -> bool:
     """Whether all units have one machine and one head, so that size alone is left."""
     groups = scheme.plant.groups
     first = groups[0]
-    return all(
+    return not scheme.waits_to_start and all(
         group.curve == first.curve
         and not isinstance(group.curve, HillChart)
         and not group.branch
+        and group.output_limit is None
         and group.axis_level == first.axis_level
         and group.minimum_share == first.minimum_share
         and group.head_exponent == first.head_exponent

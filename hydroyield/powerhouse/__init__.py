@@ -3,7 +3,7 @@
 from hydroyield.powerhouse.dispatch import HeadLines
 from hydroyield.powerhouse.dispatcher import Dispatcher
 from hydroyield.powerhouse.operation import Operation, operate
-from hydroyield.powerhouse.outages import Outages, Spread
+from hydroyield.powerhouse.outages import Dated, Outages, Spread
 from hydroyield.powerhouse.types import MachineType, machine_types
 from hydroyield.powerhouse.units import (
     EfficiencyCurve,
@@ -11,11 +11,13 @@ from hydroyield.powerhouse.units import (
     HillChart,
     JetCurve,
     LoadCurve,
+    OutputLimit,
     Plant,
     UnitGroup,
 )
 
 __all__ = [
+    "Dated",
     "Dispatcher",
     "EfficiencyCurve",
     "Electrical",
@@ -26,6 +28,7 @@ __all__ = [
     "MachineType",
     "Operation",
     "Outages",
+    "OutputLimit",
     "Plant",
     "Spread",
     "UnitGroup",

@@ -18,7 +18,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from hydroyield.powerhouse.units import HillChart, Plant, UnitGroup
+from hydroyield.powerhouse.units import BranchCurve, HillChart, Plant, UnitGroup
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -26,6 +26,7 @@ Ints = NDArray[np.int64]
 # Rows stand at even steps of head, and at even shares of the heads that occur:
 HEAD_NODES = (24, 40)  # where heads of all groups end at one level
 HEAD_NODES_OF_TWO_LINES = (8, 20)  # where some end at the tailwater and some at an axis
+HEADS_TRIED = 2001  # for those at which a limit by head begins or ends to limit
 COLUMNS_PER_UNIT = 128
 LEAST_BAND = 0.02  # share by which the least discharge of a plant may miss its column
 COLUMNS = (384, 1024)  # fewest and most, before the search for the number that fits
@@ -117,20 +118,40 @@ class DispatchTable:
             if own == line
         ]
         limits = [head for head in limits if head < highest]
-        straight = self._scales and self.plant.electrical.load_curve is None
+        bends = [
+            head
+            for group, own in zip(self.plant.groups, self.lines.line_of_group, strict=True)
+            if own == line and group.output_limit is not None
+            for head in self._bends_of_limit(group, highest)
+        ]
+        straight = self._scales and self.plant.electrical.load_curve is None and not bends
         if straight and not limits:
             return np.array([0.0, highest])
         lowest = min(limits) if straight else 0.0
         even, shares = HEAD_NODES if len(self.lines.free) == 1 else HEAD_NODES_OF_TWO_LINES
         inner = seen[(seen > lowest) & (seen < highest)]
         spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else inner
-        return _apart([0.0, *limits, *np.linspace(lowest, highest, even), *spread])
+        return _apart([0.0, *limits, *bends, *np.linspace(lowest, highest, even), *spread])
 
     def _limiting_head(self, group: UnitGroup) -> float:
         """Net head above which a unit can exceed its capacity."""
         rated = group.rated_discharge * group.rated_head * group.best_relative_output
-        ratio = self.plant.water_needed(group) / max(rated, 1e-300)
+        needed = float(self.plant.water_needed(group, np.array(group.unit_capacity)))
+        ratio = needed / max(rated, 1e-300)
         return float(group.rated_head * ratio ** (1 / (1 + group.head_exponent)))
+
+    def _bends_of_limit(self, group: UnitGroup, highest: float) -> list[float]:
+        """Heads up to the highest at which a limit by head bends, or begins or ends to limit."""
+        assert group.output_limit is not None
+        head = np.linspace(0, highest, HEADS_TRIED)
+        water = group.full_discharge(head) * head * group.best_relative_output
+        spare = group.most_output(head) - self.plant.terminal_output(group, water)
+        crosses = np.flatnonzero(spare[:-1] * spare[1:] < 0)
+        part = spare[crosses] / (spare[crosses] - spare[crosses + 1])
+        whole = group.curve.head_left(np.array(1.0)) if isinstance(group.curve, BranchCurve) else 1
+        bends = np.array(group.output_limit.heads) / whole
+        met = head[crosses] + part * np.diff(head)[crosses]
+        return [float(found) for found in (*met, *bends) if 0 < found < highest]
 
     def _heads_of_rows(self) -> Floats:
         """(lines, rows) head of each line in each row."""
@@ -213,7 +234,7 @@ class DispatchTable:
         else:
             relative = share * group.efficiency(share, head[:, None])
         output = self.plant.terminal_output(group, open_water * relative)
-        output = np.minimum(output, group.unit_capacity) / scale
+        output = np.minimum(output, group.most_output(head[:, None], share)) / scale
         output = np.where(runs, output, -np.inf)
         output[:, 0] = np.maximum(0.0, output[:, 0])
         return output
@@ -313,7 +334,8 @@ class DispatchTable:
             share = discharge[alone] / np.maximum(group.full_discharge(head), 1e-300)
             water = discharge[alone] * head * group.efficiency(share, head)
             power = self.plant.terminal_output(group, water)
-            output[alone] = np.where(share <= 1, np.minimum(power, group.unit_capacity), -np.inf)
+            most = group.most_output(head, share)
+            output[alone] = np.where(share <= 1, np.minimum(power, most), -np.inf)
         return output
 
     def _with_bend(self, heads: Floats, share: Floats, straight: Floats) -> Floats:

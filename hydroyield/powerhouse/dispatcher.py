@@ -15,6 +15,7 @@ from hydroyield.powerhouse.units import Plant, UnitGroup
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Bools = NDArray[np.bool_]
 
 
 class Dispatcher:
@@ -107,7 +108,8 @@ class Dispatcher:
         total = np.zeros(turbined.size)
         for number, (group, line) in enumerate(self.groups_on_lines):
             full = group.full_discharge(heads[line])
-            needed = self.plant.water_needed(group) / np.maximum(full * heads[line], 1e-300)
+            water = self.plant.water_needed(group, group.most_output(heads[line]))
+            needed = water / np.maximum(full * heads[line], 1e-300)
             share = group.share_giving(needed)
             runs = running[:, number] == 1
             total[runs] += (
@@ -116,6 +118,41 @@ class Dispatcher:
                 * np.maximum(full, 1e-300)[runs]
             )
         return total
+
+    def can_start(self, state: HeadState, turbined: Floats, reach: Floats) -> Bools:
+        """(n,) whether a unit that can run at `turbined` has water enough to start.
+
+        turbined : (n,) at which the plant would run [m3/s]
+        reach : (n,) the most that it could take [m3/s]
+        """
+        mask = self.admissible(state, turbined, self.heads(state, turbined))
+        heads = self.heads(state, reach)
+        found = np.zeros(turbined.shape, dtype=np.bool_)
+        for number, (group, line) in enumerate(self.groups_on_lines):
+            share = max(group.starting_share, group.minimum_share)
+            enough = reach >= share * group.full_discharge(heads[line]) * (1 - 1e-9)
+            found |= enough & (mask >> number & 1 == 1)
+        return found
+
+    def capacity(self, state: HeadState, turbined: Floats, running: Ints) -> Floats:
+        """(n,) the most that the running units may give together at the heads of `turbined` [W].
+
+        turbined : (n,) for the heads [m3/s]
+        running : (n, groups) 1 for the groups that run
+        """
+        if not self.limited_by_head:
+            of_groups = [group.count * group.unit_capacity for group in self.plant.groups]
+            return np.asarray((running * np.array(of_groups)).sum(axis=1))
+        heads = self.heads(state, turbined)
+        total = np.zeros(turbined.size)
+        for number, (group, line) in enumerate(self.groups_on_lines):
+            total += running[:, number] * group.count * group.most_output(heads[line])
+        return total
+
+    @property
+    def limited_by_head(self) -> bool:
+        """Whether what a unit may give changes with the head."""
+        return any(group.output_limit is not None for group in self.plant.groups)
 
     def unit_discharges(self, state: HeadState, turbined: Floats) -> Floats:
         """(units, n) discharge of each unit [m3/s], units in the order of the groups.
@@ -157,7 +194,7 @@ class Dispatcher:
             share = np.clip(discharge / full, group.minimum_share, 1.0)
             water = discharge * heads[line] * group.efficiency(share, heads[line])
             power = self.plant.terminal_output(group, water)
-            output += np.minimum(power, group.unit_capacity)
+            output += np.minimum(power, group.most_output(heads[line], share))
         return output
 
     def shaft_power(self, state: HeadState, turbined: Floats, output: Floats) -> Floats:
@@ -176,7 +213,8 @@ class Dispatcher:
             full = np.maximum(group.full_discharge(heads[line]), 1e-300)
             share = np.clip(discharge / full, group.minimum_share, 1.0)
             water = discharge * heads[line] * group.efficiency(share, heads[line])
-            own = np.minimum(self.plant.terminal_output(group, water), group.unit_capacity)
+            most = group.most_output(heads[line], share)
+            own = np.minimum(self.plant.terminal_output(group, water), most)
             given += own
             taken += electrical.load_curve.shaft(own, group.unit_capacity) / electrical.drive
         full_load = 1 / electrical.at_terminals

@@ -64,12 +64,19 @@ class Operation:
     at_capacity: Bools
 
 
-def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: Bools) -> Operation:
+def operate(
+    dispatcher: Dispatcher,
+    state: HeadState,
+    offered: Floats,
+    stopped: Bools,
+    waiting: Bools | None = None,
+) -> Operation:
     """Find how the plant runs.
 
     state : levels at n states of the river, in rising order of discharge where possible
     offered : (n,) water offered to the turbines [m3/s]
     stopped : (n,) the river discharge stops the plant
+    waiting : (n,) the plant stands and waits for more water to start; None where it never does
     """
     fully_open = _full_opening(dispatcher, state, offered)
     reach = np.minimum(offered, fully_open)
@@ -90,6 +97,7 @@ def operate(dispatcher: Dispatcher, state: HeadState, offered: Floats, stopped: 
     if dispatcher.on_two_lines:
         output = dispatcher.output_of_best_sharing(state, turbined)
     runs = (output > 0) & ~stopped
+    runs = runs if waiting is None else runs & ~waiting
     turbined, output = np.where(runs, turbined, 0.0), np.where(runs, output, 0.0)
     at_capacity &= runs
     idle = np.flatnonzero(runs & ~at_capacity & (turbined < reach * (1 - 1e-6)))
@@ -268,10 +276,10 @@ def _least_at_capacity(
     """
     mask = dispatcher.admissible(state, reach, dispatcher.heads(state, reach))
     bits = (mask[:, None] >> np.arange(len(dispatcher.plant.groups))) & 1
-    of_groups = np.array([g.count * g.unit_capacity for g in dispatcher.plant.groups])
-    capacity = (bits * of_groups).sum(axis=1)
+    capacity = dispatcher.capacity(state, reach, bits)
     full = (dispatcher.discharge_at_capacity(state, reach, bits) <= reach) & (capacity > 0)
-    full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
+    if not dispatcher.limited_by_head:
+        full &= capacity >= output * (1 - 1e-9)  # more may run at a smaller discharge
     chosen = np.flatnonzero(full)
     if chosen.size:
         part, running = state[chosen], bits[chosen]
@@ -279,10 +287,12 @@ def _least_at_capacity(
         def short(tried: Floats) -> Floats:
             return dispatcher.discharge_at_capacity(part, tried, running) - tried
 
-        low = np.zeros(chosen.size)
+        found = last_not_below(short, np.zeros(chosen.size), reach[chosen])
+        given = dispatcher.capacity(part, found, running)
+        kept = given >= output[chosen] * (1 - 1e-9)  # where heads limit it is known only now
+        full[chosen] = kept
         turbined, output = turbined.copy(), output.copy()
-        turbined[chosen] = last_not_below(short, low, reach[chosen])
-        output[chosen] = capacity[chosen]
+        turbined[chosen[kept]], output[chosen[kept]] = found[kept], given[kept]
     return turbined, output, full
 
 
@@ -300,7 +310,7 @@ def _some_at_capacity(
         power = dispatcher.plant.terminal_output(
             group, full * heads[line] * share * group.efficiency(share, heads[line])
         )
-        found |= (discharge > 0) & (power >= group.unit_capacity)
+        found |= (discharge > 0) & (power >= group.most_output(heads[line], share))
     return found
 
 

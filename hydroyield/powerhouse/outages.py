@@ -1,6 +1,7 @@
 """Units out of service: the chance of every state of the plant, month by month.
 
-Planned days take one unit after another out, on days spread evenly over the months named. Forced
+Planned days take one unit after another out, on days spread evenly over the months named, or in
+windows of the year, which count as days of their months. Forced
 outages strike every unit that is not planned out with the same chance, each by itself (binomial
 states); what units share, such as the intake or the line, takes out all of them at once.
 """
@@ -18,6 +19,7 @@ from numpy.typing import NDArray
 Floats = NDArray[np.float64]
 Counts = tuple[int, ...]
 
+SHORTEST = (31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)  # d, of each month
 NEGLIGIBLE = 1e-12  # chance of a state that is not computed
 
 
@@ -41,6 +43,60 @@ class Spread:
         spread = (days_of_month * named).sum(axis=1, keepdims=True)
         return np.asarray(np.where(named, self.days / np.maximum(spread, 1e-9), 0.0))
 
+    @property
+    def by_month(self) -> Floats:
+        """(12,) days in each month of a year of 365 days, January first [d]."""
+        shortest = np.array([SHORTEST], dtype=np.float64)
+        return np.asarray((self.chance(shortest) * shortest)[0])
+
+
+@dataclass(frozen=True)
+class Dated:
+    """Windows of the year, the same every year; they count as days of their months.
+
+    windows : (first month, first day), (last month, last day) of each, both included, over the turn
+        of the year where the last lies before the first
+    turns : units that take turns, each out of service for an equal part of the windows
+    """
+
+    windows: tuple[tuple[tuple[int, int], tuple[int, int]], ...]
+    turns: int = 1
+
+    def chance(self, days_of_month: Floats) -> Floats:
+        """(y, 12) chance that a day is one of them and that it is a given unit's turn.
+
+        days_of_month : (y, 12) length of each month, January first [d]
+        """
+        found = np.zeros(days_of_month.shape)
+        for month, first, last in self._parts():
+            end = np.minimum(days_of_month[:, month - 1], last)
+            found[:, month - 1] += np.maximum(0.0, end - first + 1)
+        return found / days_of_month / self.turns
+
+    def _parts(self) -> Iterator[tuple[int, int, float]]:
+        """(month, first day, last day) of the windows cut at the turns of months."""
+        for (month, day), (last_month, last_day) in self.windows:
+            while month != last_month or day > last_day:
+                yield month, day, np.inf
+                month, day = month % 12 + 1, 1
+            yield month, day, last_day
+
+    @property
+    def by_month(self) -> Floats:
+        """(12,) days of one unit in each month of a year of 365 days, January first [d]."""
+        shortest = np.array([SHORTEST], dtype=np.float64)
+        return np.asarray((self.chance(shortest) * shortest)[0])
+
+    @property
+    def days(self) -> float:
+        """Days of one unit in a year of 365 days [d]."""
+        return float(self.by_month.sum())
+
+    @property
+    def months(self) -> tuple[int, ...]:
+        """Calendar months that they touch."""
+        return tuple(int(month) + 1 for month in np.flatnonzero(self.by_month > 0))
+
 
 @dataclass(frozen=True)
 class Outages:
@@ -53,8 +109,8 @@ class Outages:
     closed : calendar months in which the plant does not run
     """
 
-    planned: Spread | None = None
-    standstill: Spread | None = None
+    planned: Spread | Dated | None = None
+    standstill: Spread | Dated | None = None
     forced_rate: float = 0.0
     common_rate: float = 0.0
     closed: tuple[int, ...] = ()

@@ -67,8 +67,12 @@ class BranchCurve:
     curve: EfficiencyCurve | JetCurve
     lost: float
 
+    def head_left(self, relative: Floats) -> Floats:
+        """Head behind the branch over that before it, at a discharge over that of full opening."""
+        return np.asarray(1 - self.lost * relative**2)
+
     def __call__(self, relative: Floats) -> Floats:
-        left = 1 - self.lost * relative**2
+        left = self.head_left(relative)
         share = relative * np.sqrt((1 - self.lost) / left)
         return np.asarray(left * self.curve(np.minimum(share, 1.0)))
 
@@ -134,6 +138,23 @@ class HillChart:
         return max(map(max, self.values))
 
 
+@dataclass(frozen=True)
+class OutputLimit:
+    """The most that one unit gives at a net head, beside its capacity.
+
+    heads : net, rising [m]
+    powers : at the generator terminals [W]
+
+    Linear between the points, constant outside them.
+    """
+
+    heads: tuple[float, ...]
+    powers: tuple[float, ...]
+
+    def __call__(self, net_head: Floats) -> Floats:
+        return np.asarray(np.interp(net_head, self.heads, self.powers))
+
+
 def _place(nodes: tuple[float, ...], x: Floats) -> tuple[NDArray[np.int64], Floats]:
     """Interval of each x between rising nodes, and how far it lies along it, 0 to 1."""
     edges = np.asarray(nodes)
@@ -161,6 +182,9 @@ class UnitGroup:
     curve : efficiency of the turbine
     axis_level : where the head of an impulse machine ends [m]; None for the tailwater
     branch : k of h = k q^2 on the way of one unit alone [m per (m3/s)^2]
+    output_limit : against the net head; None where the capacity alone limits
+    starting_share : discharge at which a unit that stands starts, as a share of full discharge;
+        where it is less than the minimum, at the minimum
     """
 
     count: int
@@ -172,6 +196,8 @@ class UnitGroup:
     curve: EfficiencyCurve | JetCurve | BranchCurve | HillChart
     axis_level: float | None = None
     branch: float = 0.0
+    output_limit: OutputLimit | None = None
+    starting_share: float = 0.0
 
     def before_branch(self) -> UnitGroup:
         """The same units as the shared waterway sees them, their branches taken into the curve."""
@@ -179,10 +205,13 @@ class UnitGroup:
             return self
         lost = self.branch * self.rated_discharge**2
         share = lost / (self.rated_head + lost)
+        openings = np.array([self.minimum_share, self.starting_share])
+        minimum, starting = relative_opening(openings, share).tolist()
         return replace(
             self,
             rated_head=self.rated_head + lost,
-            minimum_share=float(relative_opening(np.array([self.minimum_share]), share)[0]),
+            minimum_share=minimum,
+            starting_share=starting,
             curve=BranchCurve(cast("EfficiencyCurve | JetCurve", self.curve), share),
             branch=0.0,
         )
@@ -216,10 +245,23 @@ class UnitGroup:
 
     def share_giving(self, relative_output: Floats) -> Floats:
         """Least share of full discharge with this share x efficiency; inf where not reached."""
-        if isinstance(self.curve, HillChart):  # it depends on the head, and is found by search
-            return np.full(np.shape(relative_output), np.inf)
+        by_head = isinstance(self.curve, HillChart)
+        if by_head or (self.output_limit is not None and isinstance(self.curve, BranchCurve)):
+            return np.full(np.shape(relative_output), np.inf)  # found by search
         share, relative = self._relative_output
         return np.interp(relative_output, relative, share, right=np.inf)
+
+    def most_output(self, net_head: Floats, share: Floats | float = 1.0) -> Floats:
+        """The most that the unit may give at the generator terminals [W].
+
+        net_head, share : arrays that go together [m]; the share of full discharge matters only
+            where heads are those before a branch
+        """
+        if self.output_limit is None:
+            return np.asarray(self.unit_capacity)
+        if isinstance(self.curve, BranchCurve):
+            net_head = net_head * self.curve.head_left(np.asarray(share))
+        return np.minimum(self.unit_capacity, self.output_limit(net_head))
 
     def full_discharge(self, net_head: Floats) -> Floats:
         """Discharge of one fully open unit [m3/s] at `net_head` [m]; 0 without head."""
@@ -327,14 +369,17 @@ class Plant:
             return shaft * self.electrical.generator
         return self.electrical.load_curve.output(shaft, group.unit_capacity)
 
-    def water_needed(self, group: UnitGroup) -> float:
-        """Discharge x net head x turbine efficiency that gives a unit its capacity [m4/s]."""
-        electrical, capacity = self.electrical, group.unit_capacity
+    def water_needed(self, group: UnitGroup, output: Floats) -> Floats:
+        """Discharge x net head x turbine efficiency of a unit [m4/s].
+
+        output : at the generator terminals [W]
+        """
+        electrical = self.electrical
         if electrical.load_curve is None:
-            shaft = capacity / electrical.generator
+            shaft = output / electrical.generator
         else:
-            shaft = float(electrical.load_curve.shaft(np.array(capacity), capacity))
-        return shaft / (self.specific_weight * electrical.drive)
+            shaft = electrical.load_curve.shaft(output, group.unit_capacity)
+        return np.asarray(shaft / (self.specific_weight * electrical.drive))
 
     @property
     def installed_capacity(self) -> float:

@@ -51,8 +51,9 @@ METHODS = (
     ),
     (
         "Water to the turbines",
-        "River discharge less the largest environmental flow rule (never more than the inflow, and "
-        "less what counts towards it) and less all abstractions.",
+        "River discharge less the environmental flow (of several rules the largest, unless stated "
+        "otherwise; never more than the inflow, and less what counts towards it) and less all "
+        "abstractions.",
     ),
     (
         "Head",
@@ -132,6 +133,10 @@ def _answer(estimate: SiteEstimate) -> str:
     )
     if estimate.gain is not None:
         text += f"That is {words.gain(estimate)}. "
+    if words.metered(estimate):
+        text += f"Metered are {words.metered(estimate)}. "
+    if words.ageing(estimate):
+        text += f"This is the new plant; {words.ageing(estimate)}. "
     if not estimate.has_years:
         return text + (
             "The river is known by a duration table alone, so nothing can be said of single years "
@@ -156,8 +161,8 @@ def _basis(estimate: SiteEstimate) -> Rows:
     if words.inflow_below(model):
         rows.append(("Inflow between intake and tailwater", words.inflow_below(model)))
     rules = words.environmental_flow(model)
-    title = "Environmental flow" + (", the largest of" if len(rules) > 1 else "")
-    rows.append((title, "; ".join(rules) or "none stated"))
+    together = words.TOGETHER[model.environmental_flow_combination] if len(rules) > 1 else ""
+    rows.append((f"Environmental flow{together}", "; ".join(rules) or "none stated"))
     rows += _rule_costs(estimate)
     rows += [("Abstraction", text) for text in words.abstractions(model)]
     rows += [
@@ -177,13 +182,18 @@ def _basis(estimate: SiteEstimate) -> Rows:
 def _rule_costs(estimate: SiteEstimate) -> Rows:
     if not estimate.rule_costs:
         return []
-    *each, together = (f"{rounded(max(0.0, mwh))} MWh" for mwh in estimate.rule_costs)
+    *each, together = (f"{words.signed(mwh)} MWh" for mwh in _clear(estimate.rule_costs))
     apart = f" (rule by rule {', '.join(each)}; rules overlap)" if len(each) > 1 else ""
     days = f"{estimate.days_at_residual_flow:.0f} days a year"
     return [
         ("Cost of environmental flow", f"{together} a year{apart}"),
         ("Reach at its residual flow", days),
     ]
+
+
+def _clear(costs: Sequence[float]) -> list[float]:
+    """Costs [MWh] without rounding alone, which may be negative."""
+    return [mwh if abs(mwh) > UNSEEN * max(map(abs, costs)) else 0.0 for mwh in costs]
 
 
 def _of_record(estimate: SiteEstimate) -> Rows:
@@ -225,10 +235,11 @@ def _turbines(estimate: SiteEstimate) -> Rows:
         rows.append(
             (
                 f"{group.count} x {group.type}",
-                mark("unit_capacity", f"{rounded(group.unit_capacity / W_PER_KW)} kW"),
+                mark("unit_capacity", f"{rounded(group.unit_capacity / W_PER_KW)} kW")
+                + words.output_limit(group),
                 mark("rated_discharge", words.discharge(group.rated_discharge)),
                 mark("rated_head", words.head(group.rated_head)),
-                words.percent(group.minimum_share),
+                words.percent(group.minimum_share) + words.starting(group),
                 "typical of the type" if typical else _given(group),
             )
         )

@@ -6,6 +6,7 @@ from dataclasses import asdict
 from typing import Any
 
 import hydroyield
+from hydroyield.energy.beside import AGES, after_years, at_terminals, mean_over_life
 from hydroyield.energy.standing import hours_by_cause, unit_hours
 from hydroyield.jobs import SiteEstimate
 from hydroyield.quantities import W_PER_KW
@@ -43,6 +44,8 @@ def result(estimate: SiteEstimate) -> dict[str, Any]:
         "environmental_flow_mean_m3s": estimate.environmental_flow_mean_m3s,
         "days_at_residual_flow": estimate.days_at_residual_flow,
         "gain": _gain(estimate),
+        "ageing": _ageing(estimate),
+        "metered_energy_mwh": _metered(estimate),
         "mean_hours_a_year": _hours(estimate),
         "unit_running_hours": unit_hours(estimate),
         "environmental_flow_costs": _rule_costs(estimate),
@@ -145,6 +148,23 @@ def _gain(estimate: SiteEstimate) -> dict[str, Any] | None:
         "gain_mwh": gain.gain_mwh,
         "years": list(gain.years),
     }
+
+
+def _ageing(estimate: SiteEstimate) -> dict[str, Any] | None:
+    share, new = estimate.site.model.operation.degradation, estimate.mean_annual_energy_mwh
+    if share is None:
+        return None
+    return {
+        "degradation_share": share,
+        "aged_energy_mwh": {str(age): after_years(new, share, age) for age in AGES},
+        "mean_aged_energy_mwh": mean_over_life(new, share),
+    }
+
+
+def _metered(estimate: SiteEstimate) -> float | None:
+    if estimate.site.model.electrical.metered_at == "grid":
+        return None
+    return at_terminals(estimate.ledger_mwh)
 
 
 def _hours(estimate: SiteEstimate) -> dict[str, float]:

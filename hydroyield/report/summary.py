@@ -95,6 +95,10 @@ def _facts(estimate: SiteEstimate) -> Iterator[tuple[str, str]]:
         yield "", words.filled(estimate)
     if words.gain(estimate):
         yield "Gain", words.gain(estimate)
+    if words.metered(estimate):
+        yield "Metered", words.metered(estimate)
+    if words.ageing(estimate):
+        yield "As it ages", words.ageing(estimate)
     yield "Capacity factor", words.percent(estimate.capacity_factor)
     yield "Installed capacity", f"{rounded(estimate.installed_capacity_kw)} kW, {units}"
     yield "Most delivered", f"{rounded(estimate.maximum_net_power_kw)} kW"

@@ -5,7 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any
 
+from hydroyield.energy.beside import AGES, LIFE, after_years, at_terminals, mean_over_life
 from hydroyield.jobs import SiteEstimate
+from hydroyield.powerhouse import Dated, UnitGroup
 from hydroyield.quantities import W_PER_KW, rounded
 from hydroyield.river.presets import PRESETS
 from hydroyield.river.years import MONTH_NAMES, span
@@ -20,6 +22,11 @@ KM2 = 1e6  # m2
 def energy(mwh: float) -> str:
     """Energy to three significant figures."""
     return f"{rounded(mwh)} MWh"
+
+
+def signed(value: float) -> str:
+    """A number to three significant figures, a minus in front where it is negative."""
+    return ("-" if value < 0 else "") + rounded(abs(value))
 
 
 def head(metres: float) -> str:
@@ -66,6 +73,13 @@ def months(numbers: tuple[int, ...] | None) -> str:
 
 
 # --- what the estimate rests on -------------------------------------------------------------------
+
+
+TOGETHER = {
+    "largest": ", the largest of",
+    "sum": ", the sum of",
+    "priority": ", the first that holds of",
+}
 
 
 def environmental_flow(model: SiteFile) -> list[str]:
@@ -160,6 +174,25 @@ def gain(estimate: SiteEstimate) -> str:
     )
 
 
+def ageing(estimate: SiteEstimate) -> str:
+    """The energy of the plant as it ages, in one phrase; "" where nothing is stated."""
+    share, new = estimate.site.model.operation.degradation, estimate.mean_annual_energy_mwh
+    if share is None:
+        return ""
+    aged = ", ".join(f"{rounded(after_years(new, share, age))}" for age in AGES)
+    return (
+        f"with {100 * share:g} % less each year, {aged} MWh after {AGES[0]}, {AGES[1]} and "
+        f"{AGES[2]} years, {energy(mean_over_life(new, share))} on average over {LIFE}"
+    )
+
+
+def metered(estimate: SiteEstimate) -> str:
+    """The energy at the generator terminals, in one phrase; "" where the grid is the place."""
+    if estimate.site.model.electrical.metered_at == "grid":
+        return ""
+    return f"{energy(at_terminals(estimate.ledger_mwh))} at the generator terminals"
+
+
 def inflow_below(model: SiteFile) -> str:
     """Water that joins between intake and tailwater, in one phrase; "" without any."""
     block = model.discharge.inflow_below_intake
@@ -219,15 +252,41 @@ def waterway(model: SiteFile) -> str:
     return "; ".join(losses) or "none stated"
 
 
+def starting(group: UnitGroup) -> str:
+    """The starting discharge, behind the minimum; "" where it is no more than that."""
+    if group.starting_share <= group.minimum_share:
+        return ""
+    return f", starts at {percent(group.starting_share)}"
+
+
+def output_limit(group: UnitGroup) -> str:
+    """The limit by head, behind the capacity; "" without one."""
+    limit = group.output_limit
+    if limit is None:
+        return ""
+    ends = " to ".join(
+        f"{rounded(limit.powers[i] / W_PER_KW)} kW at {head(limit.heads[i])}" for i in (0, -1)
+    )
+    return f", limited by head: {ends}"
+
+
 def outages(estimate: SiteEstimate) -> str:
     """When units are out of service, in one phrase."""
     found = estimate.scheme.outages
     parts = []
     if found.planned is not None:
-        parts.append(f"{found.planned.days:g} days of each unit in {months(found.planned.months)}")
+        if isinstance(found.planned, Dated):
+            turns = "one unit after another" if found.planned.turns > 1 else "the unit"
+            parts.append(f"{turns} out of service {_windows(found.planned)}")
+        else:
+            planned = found.planned
+            parts.append(f"{planned.days:g} days of each unit in {months(planned.months)}")
     if found.standstill is not None:
         standstill = found.standstill
-        parts.append(f"all stand {standstill.days:g} days in {months(standstill.months)}")
+        when = f"in {months(standstill.months)}"
+        if isinstance(standstill, Dated):
+            when = _windows(standstill)
+        parts.append(f"all stand {standstill.days:g} days {when}")
     if found.forced_rate:
         parts.append(f"each unit down {100 * found.forced_rate:g} % of the hours")
     if found.common_rate:
@@ -235,6 +294,14 @@ def outages(estimate: SiteEstimate) -> str:
     if found.closed:
         parts.append(f"closed in {months(found.closed)}")
     return "; ".join(parts) or "none stated"
+
+
+def _windows(dated: Dated) -> str:
+    """Windows of the year as people write them."""
+    return " and ".join(
+        f"from {day} {MONTH_NAMES[month - 1]} to {last_day} {MONTH_NAMES[last_month - 1]}"
+        for (month, day), (last_month, last_day) in dated.windows
+    )
 
 
 def _loss(loss: WaterwayLoss) -> str:

@@ -1,6 +1,7 @@
 """The record condensed once: distinct pairs of season and discharge, and how often each occurs.
 
-Power depends on the river's discharge and, through the rules, on the season. So every plant is
+Power depends on the river's discharge, through the rules on the season, and for a plant that starts
+at more water than it needs to run on whether it ran the day before. So every plant is
 evaluated on the distinct pairs only, and energy by month and year follows from counting days: the
 day-by-day run to rounding. Gauges report few digits, so a long record has far fewer cells than
 days.
@@ -22,7 +23,7 @@ Ints = NDArray[np.int64]
 
 @dataclass(frozen=True)
 class Cells:
-    """Distinct states of the river over the years used, and the days in each.
+    """Distinct states of the river, and of a waiting plant, over the years used; the days in each.
 
     discharge : (c,) river discharge [m3/s]
     season : (c,) season, see `WaterRules`
@@ -31,6 +32,7 @@ class Cells:
     years : (y,) names of the years used
     hours : (y, 12) hours of each month, January first [h]
     valid_days : (y, 12) days with a value
+    waiting : (c,) the plant stood the day before and waits for more water; None where it never does
     """
 
     discharge: Floats
@@ -40,6 +42,7 @@ class Cells:
     years: Ints
     hours: Floats
     valid_days: Ints
+    waiting: NDArray[np.bool_] | None = None
 
     @property
     def hours_per_year(self) -> float:
@@ -88,6 +91,7 @@ def condense(
     months: MonthTable,
     used: NDArray[np.bool_],
     season_of_month: Ints,
+    waiting: NDArray[np.bool_] | None = None,
 ) -> Cells:
     """Condense a daily series into cells.
 
@@ -95,15 +99,19 @@ def condense(
     calendar : of the same days
     months, used : from `count_months` and `usable_years`
     season_of_month : (12,), see `WaterRules`
+    waiting : (n,) days on which the plant stands for what was the day before, which are cells of
+        their own; None without
     """
     new_row = np.cumsum(used) - 1
     row = calendar.year - months.years[0]
     chosen = used[row] & ~np.isnan(discharge)
     month = calendar.month[chosen]
     distinct, rank = np.unique(discharge[chosen], return_inverse=True)
-    pairs, cell_of_day = np.unique(
-        season_of_month[month - 1] * distinct.size + rank, return_inverse=True
+    waits = np.zeros(rank.size, np.int64) if waiting is None else waiting[chosen].astype(np.int64)
+    triples, cell_of_day = np.unique(
+        2 * (season_of_month[month - 1] * distinct.size + rank) + waits, return_inverse=True
     )
+    pairs = triples // 2
     return Cells(
         discharge=distinct[pairs % distinct.size],
         season=pairs // distinct.size,
@@ -112,4 +120,5 @@ def condense(
         years=months.years[used],
         hours=months.hours[used],
         valid_days=months.valid[used],
+        waiting=None if waiting is None else triples % 2 == 1,
     )

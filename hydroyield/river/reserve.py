@@ -85,12 +85,13 @@ class WaterRules:
     """All rules of a site, by season.
 
     season_of_month : (12,) season of each calendar month, January first
-    fixed : (s,) largest of the rules that state a discharge [m3/s]
+    fixed : (s,) largest, or sum, of the rules that state a discharge [m3/s]
     inflow_rules : the rules that depend on the inflow
     in_force : (inflow rules, s) whether each holds in a season
     abstracted : (s,) all abstractions [m3/s]
     counted : (s,) those that count as environmental flow [m3/s]
     unreturned : (s,) those that do not come back above the tailwater [m3/s]
+    summed : rules that hold at the same time add up; else the largest of them applies
     """
 
     season_of_month: Ints
@@ -100,6 +101,7 @@ class WaterRules:
     abstracted: Floats
     counted: Floats
     unreturned: Floats
+    summed: bool = False
 
     @classmethod
     def by_month(
@@ -108,18 +110,21 @@ class WaterRules:
         inflow_rules: Sequence[InflowRule] = (),
         abstractions: Sequence[Abstraction] = (),
         also: Sequence[Sequence[float]] = (),
+        summed: bool = False,
     ) -> WaterRules:
         """Merge the months in which the same rules hold into seasons.
 
         fixed : for each rule that states a discharge its twelve values, January first [m3/s]
         also : twelve values each of whatever else differs by month and so divides seasons
+        summed : rules add up, and not the largest applies
         """
         holds = np.array([np.isin(ALL_YEAR, rule.months) for rule in inflow_rules])
         holds = holds.reshape(len(inflow_rules), 12)
         table = np.zeros((12, 4 + len(holds) + len(also)))
         table[:, 4 : 4 + len(holds)] = holds.T
         table[:, 4 + len(holds) :] = np.asarray(also).reshape(len(also), 12).T
-        table[:, 0] = np.max(np.asarray([[0.0] * 12, *fixed]), axis=0)
+        together = np.sum if summed else np.max
+        table[:, 0] = together(np.asarray([[0.0] * 12, *fixed]), axis=0)
         for taken in abstractions:
             for month in taken.months:
                 table[month - 1, 1] += taken.discharge
@@ -129,7 +134,9 @@ class WaterRules:
         in_force = rows[:, 4 : 4 + len(holds)].T > 0
         flow, abstracted, counted, unreturned = rows[:, :4].T
         rules = tuple(inflow_rules)
-        return cls(season.reshape(12), flow, rules, in_force, abstracted, counted, unreturned)
+        return cls(
+            season.reshape(12), flow, rules, in_force, abstracted, counted, unreturned, summed
+        )
 
     @property
     def season_count(self) -> int:
@@ -146,11 +153,16 @@ class WaterRules:
 
         discharge, season : arrays of one shape; discharge in [m3/s]
         """
+        return np.minimum(discharge, self._asked(discharge, season))
+
+    def _asked(self, discharge: Floats, season: Ints) -> Floats:
+        """What the rules ask for, which may be more than the inflow [m3/s]."""
         flow = self.fixed[season]
         for rule, in_force in zip(self.inflow_rules, self.in_force, strict=True):
-            kept = np.maximum(flow, rule.kept(discharge))
+            own = rule.kept(discharge)
+            kept = flow + own if self.summed else np.maximum(flow, own)
             flow = kept if in_force.all() else np.where(in_force[season], kept, flow)
-        return np.minimum(discharge, flow)
+        return flow
 
     def offered(self, discharge: Floats, season: Ints) -> Floats:
         """Water offered to the turbines [m3/s].
@@ -176,7 +188,7 @@ class WaterRules:
         """
         seasons = np.arange(self.season_count)
         low, high = np.zeros(seasons.size), np.full(seasons.size, highest)
-        if any(isinstance(rule, InflowSteps) for rule in self.inflow_rules):
+        if self.summed or any(isinstance(rule, InflowSteps) for rule in self.inflow_rules):
             low, high = self._first_bracket(wanted, highest)
         most = self.offered(high, seasons)
         if most.max() < wanted:
@@ -191,17 +203,41 @@ class WaterRules:
         return float(high.min()), int(high.argmin())
 
     def _first_bracket(self, wanted: float, highest: float) -> tuple[Floats, Floats]:
-        """(s,) discharges just below and at which `wanted` is first offered, where steps fall back.
+        """(s,) discharges below and at which `wanted` is first offered, where it may fall back.
 
-        Where a season never offers it, both are `highest`.
+        Steps fall back, and so do shares that add up to more than the whole. Where a season never
+        offers it, both are `highest`.
         """
-        steps = [rule.inflows for rule in self.inflow_rules if isinstance(rule, InflowSteps)]
-        edges = np.unique([q for inflows in steps for q in inflows if 0 < q <= highest])
-        tried = np.sort(np.concatenate([[0.0, highest], edges, np.nextafter(edges, 0.0)]))
+        edges = self._edges(highest)
+        even = np.sort(np.concatenate([[0.0, highest], edges, np.nextafter(edges, 0.0)]))
         low, high = np.full(self.season_count, highest), np.full(self.season_count, highest)
         for season in range(self.season_count):
+            tried = np.unique(np.concatenate([even, self._where_counted(even, season)]))
             reached = self.offered(tried, np.full(tried.size, season)) >= wanted
             if reached.any():
                 first = int(reached.argmax())
                 low[season], high[season] = tried[max(first - 1, 0)], tried[first]
         return low, high
+
+    def _edges(self, highest: float) -> Floats:
+        """Discharges up to `highest` at which a rule steps or bends [m3/s]."""
+        found: list[float] = []
+        for rule in self.inflow_rules:
+            if isinstance(rule, InflowSteps):
+                found += rule.inflows
+            else:
+                found.append(rule.above)
+                if rule.share < 1:
+                    found.append(rule.above + rule.most_taken / (1 - rule.share))
+        return np.unique([q for q in found if 0 < q <= highest])
+
+    def _where_counted(self, edges: Floats, season: int) -> Floats:
+        """Discharges between rising `edges` [m3/s] at which the rules ask for what counts already.
+
+        From there on more is released; between edges what is asked for is straight.
+        """
+        over = self._asked(edges, np.full(edges.size, season)) - self.counted[season]
+        left, right = over[:-1], over[1:]
+        crosses = np.flatnonzero(left * right < 0)
+        part = left[crosses] / (left[crosses] - right[crosses])
+        return np.asarray(edges[crosses] + part * np.diff(edges)[crosses])

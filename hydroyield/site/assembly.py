@@ -37,6 +37,7 @@ from hydroyield.powerhouse import (
     HillChart,
     JetCurve,
     LoadCurve,
+    OutputLimit,
     Plant,
     machine_types,
 )
@@ -46,7 +47,7 @@ from hydroyield.river.reserve import ALL_YEAR, InflowRule
 from hydroyield.site.head_models import Head, Headwater, RiverLevel
 from hydroyield.site.models import Site, SiteFile
 from hydroyield.site.outage_assembly import outages_of
-from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults
+from hydroyield.site.physics import WIDE_RANGE, capacity_fault, dry_head_faults, starting_fault
 from hydroyield.site.plant_models import EfficiencyTable, TurbineGroup
 from hydroyield.site.reading import SiteDescription, read_site_file
 from hydroyield.site.river_assembly import RiverAtSite, inflow_below_intake
@@ -85,6 +86,7 @@ def read_site(path: str | Path) -> SiteDescription:
             site, number, group.unit_capacity, group.rated_discharge, group.rated_head,
             specific_weight,
         )  # fmt: skip
+        faults += starting_fault(site, number, group.starting_discharge, minimum_share(group))
     if faults:
         raise SiteFileError(sorted(faults, key=lambda fault: fault.line or 0))
     return site
@@ -140,8 +142,8 @@ def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
     """The rules of a site in numbers; statistics are those of all valid days at the site."""
     fixed: list[list[float]] = []
     by_inflow: list[InflowRule] = []
-    for rule in model.environmental_flow:
-        months = rule.months or ALL_YEAR
+    held = rule_months(model)
+    for rule, months in zip(model.environmental_flow, held, strict=True):
         if rule.rule == "inflow_share":
             most = np.inf if rule.maximum_take is None else rule.maximum_take
             by_inflow.append(InflowShare(rule.share, rule.above, most, months))
@@ -152,7 +154,24 @@ def water_rules(model: SiteFile, valid_discharge: Floats) -> WaterRules:
             twelve = _twelve(rule, valid_discharge)
             fixed.append([q if m in months else 0.0 for m, q in enumerate(twelve, 1)])
     racks = waterway_of(model.waterway, model.site).racks_by_month
-    return WaterRules.by_month(fixed, by_inflow, abstractions(model), also=[racks])
+    summed = model.environmental_flow_combination == "sum"
+    return WaterRules.by_month(fixed, by_inflow, abstractions(model), also=[racks], summed=summed)
+
+
+def rule_months(model: SiteFile) -> list[tuple[int, ...]]:
+    """Months in which each rule for the environmental flow counts.
+
+    By priority a rule counts only in months that no rule before it holds in.
+    """
+    named = [rule.months or ALL_YEAR for rule in model.environmental_flow]
+    if model.environmental_flow_combination != "priority":
+        return named
+    taken: set[int] = set()
+    left = []
+    for months in named:
+        left.append(tuple(month for month in months if month not in taken))
+        taken |= set(months)
+    return left
 
 
 def _twelve(rule: Any, valid_discharge: Floats) -> list[float]:
@@ -293,6 +312,13 @@ def efficiency_curve(group: TurbineGroup) -> EfficiencyCurve | JetCurve | HillCh
     return curve if group.jets is None else JetCurve(curve, group.jets)
 
 
+def _output_limit(group: TurbineGroup) -> OutputLimit | None:
+    if group.output_limit is None:
+        return None
+    heads, powers = zip(*group.output_limit, strict=True)
+    return OutputLimit(heads, powers)
+
+
 def minimum_share(group: TurbineGroup) -> float:
     """The minimum discharge given, or that of the type, as a share of full discharge."""
     if group.minimum_discharge is None:
@@ -317,6 +343,8 @@ def _plant(
             efficiency_curve(group),
             group.axis_level,
             waterway_of(group.waterway, model.site),
+            _output_limit(group),
+            group.starting_discharge or 0.0,
         )
         for group in model.turbines
     ]

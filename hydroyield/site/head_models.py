@@ -145,7 +145,11 @@ class Channel(Block):
 
 
 class Headwater(Block):
-    """The level above the turbines: exactly one of level, table and weir."""
+    """The level above the turbines: exactly one of level, table and weir.
+
+    Gates that hold the level are a table with equal levels up to the discharge at which they stand
+    open, and rising ones beyond. Water that leaks past gates and seals goes into abstractions.
+    """
 
     example: ClassVar[dict[str, Any]] = {"level": "101.2 m"}
     exactly_one_of: ClassVar[tuple[str, ...]] = ("level", "table", "weir")
@@ -156,7 +160,7 @@ class Headwater(Block):
     table: HeadwaterTable | None = Field(
         default=None,
         description="Pairs of river discharge [m3/s] and headwater level [m], linear between "
-        "them; the last segment is extended.",
+        "them; the last segment is extended. Equal levels stand for gates that hold the level.",
         examples=[[["0 m3/s", "101.0 m"], ["50 m3/s", "101.4 m"]]],
     )
     weir: Weir | None = Field(
@@ -247,7 +251,7 @@ class Head(Block):
     )
     minimum_net_head: Annotated[float, Quantity(LENGTH, at_least=0)] | None = Field(
         default=None,
-        description="Net head below which the plant does not run [m]; any net head above 0 will "
-        "do if left out.",
+        description="Net head below which the plant does not run [m], behind the waterway that all "
+        "units share and before the branch of one unit; any net head above 0 will do if left out.",
         examples=["1.0 m"],
     )

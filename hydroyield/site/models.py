@@ -9,7 +9,7 @@ from Python is in the unit that the field states, like a number in a site file.
 from __future__ import annotations
 
 from collections.abc import Iterable
-from typing import Annotated, Any, ClassVar, Literal
+from typing import Annotated, Any, ClassVar, Literal, get_args
 
 from pydantic import BeforeValidator, Field
 
@@ -18,11 +18,11 @@ from hydroyield.site.baseline_models import Baseline
 from hydroyield.site.blocks import Block
 from hydroyield.site.discharge_models import Discharge
 from hydroyield.site.faults import Finding, flow, shown
-from hydroyield.site.fields import ListOf, Quantity, Text, scalar_text
+from hydroyield.site.fields import Choice, ListOf, Quantity, Text, scalar_text
 from hydroyield.site.head_models import Head
 from hydroyield.site.option_models import Cost, Options
 from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
-from hydroyield.site.river_models import Abstraction, ConstantRule, Rule
+from hydroyield.site.river_models import Abstraction, Combination, ConstantRule, Rule
 from hydroyield.site.waterway_models import WaterwayLoss
 
 
@@ -74,9 +74,16 @@ class SiteFile(Block):
     )
     environmental_flow: Annotated[tuple[Rule, ...], ListOf(flow(ConstantRule.example))] = Field(
         default=(),
-        description="Rules for the water that stays in the river; the largest applies, and never "
-        "more than the inflow. All water is offered to the turbines if left out.",
+        description="Rules for the water that stays in the river; the largest applies, unless "
+        "environmental_flow_combination says otherwise, and never more than the inflow. All water "
+        "is offered to the turbines if left out.",
         examples=[[ConstantRule.example]],
+    )
+    environmental_flow_combination: Annotated[Combination, Choice(get_args(Combination))] = Field(
+        default="largest",
+        description="What applies where several rules hold in a month: largest, sum, or priority "
+        "for the first of them in the list; largest if left out.",
+        examples=["sum"],
     )
     abstractions: Annotated[tuple[Abstraction, ...], ListOf(flow(Abstraction.example))] = Field(
         default=(),

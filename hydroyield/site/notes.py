@@ -37,6 +37,8 @@ def filled_in(site: SiteDescription) -> list[Note]:
         (("head", "minimum_net_head"), "any net head above 0"),
         (("site", "water_temperature"), _without_temperature(model)),
     ]
+    if len(model.environmental_flow) > 1:
+        notes.append((("environmental_flow_combination",), "the largest rule applies"))
     if model.site.latitude is None:
         notes.append((("site", "latitude"), f"gravity {STANDARD_GRAVITY:g} m/s2"))
     else:

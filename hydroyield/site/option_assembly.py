@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from hydroyield.options.combination import Combination, combinations, splits_of
 from hydroyield.options.money import Cost
 from hydroyield.powerhouse import machine_types
+from hydroyield.quantities import W_PER_KW
 from hydroyield.river import quantile
 from hydroyield.site.option_models import Cost as CostBlock
 from hydroyield.site.option_models import OptionMachine, Options
@@ -57,7 +58,7 @@ def _machine(site: SiteDescription, wanted: OptionMachine) -> Machine:
     groups = site.model.turbines
     pattern = next((group for group in groups if group.type == wanted.type), None)
     keys: dict[str, Any] = {}
-    for key in ("minimum_discharge", "efficiency", "jets", "axis_level"):
+    for key in ("minimum_discharge", "starting_discharge", "efficiency", "jets", "axis_level"):
         value = getattr(wanted, key)
         if value is None and pattern is not None:
             value = getattr(pattern, key)
@@ -66,22 +67,38 @@ def _machine(site: SiteDescription, wanted: OptionMachine) -> Machine:
     if wanted.type in IMPULSE and "axis_level" not in keys:
         axes = [group.axis_level for group in groups if group.axis_level is not None]
         keys |= {"axis_level": axes[0]} if axes else {}
-    if pattern is not None and pattern.waterway:
-        keys["waterway"] = pattern.waterway
+    for key in ("waterway", "output_limit"):
+        if pattern is not None and getattr(pattern, key):
+            keys[key] = getattr(pattern, key)
     return Machine(wanted.type, keys, pattern)
 
 
 def lacking(machine: Machine) -> str:
     """Why a machine cannot be tried at all; empty where it can."""
-    if machine.type in machine_types():
-        return ""
-    absent = [key for key in ("efficiency", "minimum_discharge") if key not in machine.keys]
-    if not absent:
-        return ""
-    return (
-        f"type {machine.type} has no typical values; write {' and '.join(absent)} of it under "
-        "options.types"
-    )
+    keys, kind = machine.keys, machine_types().get(machine.type)
+    absent = [key for key in ("efficiency", "minimum_discharge") if key not in keys]
+    if kind is None and absent:
+        return (
+            f"type {machine.type} has no typical values; write {' and '.join(absent)} of it under "
+            "options.types"
+        )
+    if "output_limit" in keys and _pattern_size(machine) is None:
+        return (
+            f"the output_limit of the {machine.type} moves with the size of the unit; write "
+            "rated_discharge of the unit that it was drawn for under turbines"
+        )
+    least = keys.get("minimum_discharge", 0.0 if kind is None else kind.minimum_discharge)
+    if keys.get("starting_discharge", least) < least:
+        return (
+            f"the {machine.type} would start at less than its minimum of {100 * least:g} %; write "
+            "a larger starting_discharge of it under options.types"
+        )
+    return ""
+
+
+def _pattern_size(machine: Machine) -> float | None:
+    """Rated discharge of the unit that tables were drawn for [m3/s]; None where it is not known."""
+    return None if machine.pattern is None else machine.pattern.rated_discharge
 
 
 def combinations_of(site: SiteDescription, valid_discharge: Floats) -> list[Combination]:
@@ -125,15 +142,18 @@ def turbines_of(machine: Machine, combination: Combination) -> tuple[TurbineGrou
 
 
 def _fitted(machine: Machine, discharge: float) -> dict[str, Any]:
-    """The keys of a machine; a table over heads is drawn for its own size and moves with it."""
-    table = machine.keys.get("efficiency")
-    if not isinstance(table, EfficiencyTable):
-        return machine.keys
-    assert machine.pattern is not None  # the table is the pattern's
-    assert machine.pattern.rated_discharge is not None  # a table needs it
-    scale = discharge / machine.pattern.rated_discharge
-    moved = tuple(scale * q for q in table.discharges)
-    return {**machine.keys, "efficiency": table.model_copy(update={"discharges": moved})}
+    """The keys of a machine; what is drawn for one size of unit moves with the size."""
+    fitted, drawn_for = dict(machine.keys), _pattern_size(machine)
+    if drawn_for is None:
+        return fitted
+    scale = discharge / drawn_for
+    table, limit = fitted.get("efficiency"), fitted.get("output_limit")
+    if isinstance(table, EfficiencyTable):
+        moved = tuple(scale * q for q in table.discharges)
+        fitted["efficiency"] = table.model_copy(update={"discharges": moved})
+    if limit is not None:
+        fitted["output_limit"] = [[head, scale * watt / W_PER_KW] for head, watt in limit]
+    return fitted
 
 
 def site_with(
@@ -178,6 +198,7 @@ def cost_of(site: SiteDescription, pipe_diameter: float | None = None) -> tuple[
         life=given.life,
         discount_rate=given.discount_rate,
         grant_share=given.grant_share,
+        degradation=site.model.operation.degradation or 0.0,
     ), metres
 
 

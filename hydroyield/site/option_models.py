@@ -44,6 +44,12 @@ class OptionMachine(Block):
         "the first turbine group of the type, else by type if left out.",
         examples=["15 %"],
     )
+    starting_discharge: Annotated[float, Quantity(SHARE, above=0, at_most=1)] | None = Field(
+        default=None,
+        description="Discharge at which a unit starts, as under turbines [share or %]; that of the "
+        "first turbine group of the type, else the minimum if left out.",
+        examples=["30 %"],
+    )
     efficiency: EfficiencyCurve | None = Field(
         default=None,
         description="Pairs of share of full discharge [share or %] and turbine efficiency [share "

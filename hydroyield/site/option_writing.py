@@ -7,9 +7,10 @@ from typing import Any
 
 import yaml
 
+from hydroyield.quantities import W_PER_KW
 from hydroyield.site.plant_models import EfficiencyTable, TurbineGroup
 
-_PLAIN_KEYS = ("minimum_discharge", "jets", "axis_level")
+_PLAIN_KEYS = ("minimum_discharge", "starting_discharge", "jets", "axis_level")
 
 
 def turbines_text(turbines: Sequence[TurbineGroup]) -> str:
@@ -42,6 +43,8 @@ def _written(group: TurbineGroup) -> dict[str, Any]:
         written["efficiency"] = _listed(curve.model_dump(exclude_none=True))
     elif curve is not None:
         written["efficiency"] = _listed(curve)
+    if group.output_limit is not None:
+        written["output_limit"] = [[head, watt / W_PER_KW] for head, watt in group.output_limit]
     if group.waterway:
         written["waterway"] = [
             _listed(loss.model_dump(exclude_none=True)) for loss in group.waterway

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from hydroyield.errors import SiteFileError
-from hydroyield.powerhouse import Outages, Spread
+from hydroyield.powerhouse import Dated, Outages, Spread
+from hydroyield.powerhouse.outages import SHORTEST
 from hydroyield.site.faults import KeyPath
+from hydroyield.site.plant_models import PlannedOutage, Standstill
 from hydroyield.site.reading import SiteDescription
 
-SHORTEST = (31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)  # d, of each month
 EVERY_MONTH = tuple(range(1, 13))
 
 
@@ -19,17 +20,24 @@ def outages_of(site: SiteDescription) -> Outages:
     operation, units = site.model.operation, sum(group.count for group in site.model.turbines)
     planned, standstill = operation.planned_outage, operation.standstill
     found = Outages(
-        planned=None if planned is None else Spread(planned.days, planned.months or EVERY_MONTH),
-        standstill=None if standstill is None else Spread(standstill.days, standstill.months),
+        planned=None if planned is None else _days(planned, units),
+        standstill=None if standstill is None else _days(standstill, 1),
         forced_rate=operation.forced_outage_rate or 0.0,
         common_rate=operation.common_outage_rate or 0.0,
         closed=operation.closed or (),
     )
-    if found.planned is not None:
+    if isinstance(found.planned, Spread):
         _refuse_too_many(site, "planned_outage", found.planned, units)
-    if found.standstill is not None:
+    if isinstance(found.standstill, Spread):
         _refuse_too_many(site, "standstill", found.standstill, 1)
     return found
+
+
+def _days(stated: PlannedOutage | Standstill, turns: int) -> Spread | Dated:
+    if stated.dates is not None:
+        return Dated(stated.dates, turns)
+    assert stated.days is not None  # one of the two is given
+    return Spread(stated.days, stated.months or EVERY_MONTH)
 
 
 def _refuse_too_many(site: SiteDescription, key: str, spread: Spread, units: int) -> None:

@@ -69,3 +69,20 @@ def capacity_fault(
         "larger rated_discharge or rated_head"
     )
     return [site.fault(("turbines", number, "unit_capacity"), message)]
+
+
+def starting_fault(
+    site: SiteDescription, number: int, starting: float | None, minimum: float
+) -> list[Fault]:
+    """The fault of a unit said to start at less water than it needs to run, if so.
+
+    number : of the turbine group, from 0
+    starting, minimum : shares of full discharge; None where it starts at the minimum
+    """
+    if starting is None or starting >= minimum:
+        return []
+    message = (
+        f"{100 * starting:g} % is less than the minimum discharge of {100 * minimum:g} %; write at "
+        "least that, or take the key out"
+    )
+    return [site.fault(("turbines", number, "starting_discharge"), message)]

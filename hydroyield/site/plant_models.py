@@ -16,6 +16,7 @@ from pydantic import (
 
 from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, POWER, SHARE
 from hydroyield.site.blocks import Block
+from hydroyield.site.date_windows import Windows
 from hydroyield.site.faults import Finding, flow
 from hydroyield.site.fields import NUMBER_OR_TEXT, Choice, ListOf, Quantity, Whole
 from hydroyield.site.months import Months
@@ -33,6 +34,7 @@ TurbineType = Literal[
     "screw",
     "other",
 ]
+MeteredAt = Literal["grid", "generator"]
 MONTHS_PER_YEAR = 12
 MOST_UNITS = 50  # of one group; more is a slip of the pen in a small plant
 
@@ -60,6 +62,14 @@ _CURVE = Pairs(
     word="typical",
 )
 EfficiencyCurve = Annotated[Table | Literal["typical"], _CURVE]
+
+
+_LIMIT = Pairs(
+    Quantity(LENGTH, above=0),
+    Quantity(POWER, above=0),
+    ("net head", "power"),
+    "[[2.0 m, 80 kW], [2.6 m, 125 kW]]",
+)
 
 
 class EfficiencyTable(Block):
@@ -171,6 +181,15 @@ class TurbineGroup(Block):
         "moment [share or %]; by type if left out.",
         examples=["20 %"],
     )
+    starting_discharge: Annotated[float, Quantity(SHARE, above=0, at_most=1)] | None = Field(
+        default=None,
+        description="Discharge at which a unit starts, of full discharge at the head of the moment "
+        "[share or %], at least the minimum. A plant that stands starts only on a day on which the "
+        "water reaches the least of these, and runs on down to the minimum; a day without a value "
+        "or a shutdown leaves it standing. With units out of service it waits on the same days. "
+        "Units start at their minimum if left out.",
+        examples=["30 %"],
+    )
     efficiency: (
         Annotated[EfficiencyCurve | EfficiencyTable, WrapValidator(_curve_or_table)] | None
     ) = Field(
@@ -193,6 +212,13 @@ class TurbineGroup(Block):
         "and the unit stands when the tailwater is higher; the head ends at the tailwater if left "
         "out.",
         examples=["98.1 m"],
+    )
+    output_limit: Annotated[Table, _LIMIT] | None = Field(
+        default=None,
+        description="Pairs of net head [m] and the most that one unit gives at it, at the "
+        "generator terminals [kW], linear between them and constant outside; a unit never gives "
+        "more than the lesser of this and unit_capacity. The capacity alone limits if left out.",
+        examples=[[["2.0 m", "80 kW"], ["2.6 m", "125 kW"]]],
     )
     waterway: Annotated[tuple[WaterwayLoss, ...], ListOf(flow(WaterwayLoss.example))] = Field(
         default=(),
@@ -339,6 +365,14 @@ class Electrical(Block):
         examples=["220 kW"],
     )
 
+    metered_at: Annotated[MeteredAt, Choice(get_args(MeteredAt))] = Field(
+        default="grid",
+        description="Where the energy is metered: grid or generator. The result is net at the grid "
+        "either way; with generator the energy at the generator terminals stands beside it, before "
+        "transformer, own use and export limit; grid if left out.",
+        examples=["generator"],
+    )
+
     @classmethod
     def keys_fit_together(
         cls, named: AbstractSet[str], written: Mapping[str, Any]
@@ -354,33 +388,71 @@ class Electrical(Block):
                     )
 
 
-class PlannedOutage(Block):
-    """Maintenance: one unit after another is out, on days spread evenly over the months named."""
+class _Days(Block):
+    """Days of every year, stated by their number or by their dates."""
+
+    exactly_one_of: ClassVar[tuple[str, ...]] = ("days", "dates")
+    months_needed: ClassVar[bool] = False
+
+    @classmethod
+    def keys_fit_together(
+        cls, named: AbstractSet[str], written: Mapping[str, Any]
+    ) -> Iterable[Finding]:
+        """Months belong to a number of days."""
+        if "dates" in named and "months" in named:
+            yield ("months",), "'months' is read with days; the dates name their months"
+        if cls.months_needed and "days" in named and "months" not in named:
+            yield ("months",), "is missing; write months: [1, 2]"
+
+
+class PlannedOutage(_Days):
+    """Maintenance: one unit after another is out, on days by their number or by their dates."""
 
     example: ClassVar[dict[str, Any]] = {"days": 10, "months": [8]}
 
-    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="10")] = Field(
-        description="Days of each unit, every year [d].", examples=[10]
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="10")] | None = Field(
+        default=None,
+        description="Days of each unit, every year, spread evenly over the months [d].",
+        examples=[10],
     )
     months: Months | None = Field(
         default=None,
-        description="Calendar months in which they fall, such as 8 or aug-sep; those that cost "
+        description="Calendar months in which the days fall, such as 8 or aug-sep; those that cost "
         "the least energy if left out.",
         examples=[[8]],
     )
+    dates: Windows | None = Field(
+        default=None,
+        description="Windows of every year, month-day, both included, over the turn of the year "
+        "where need be: in them one unit after another is out, each for an equal part. They count "
+        "as days of their months, in which the river is taken as in the whole month.",
+        examples=[["08-10 to 08-19"]],
+    )
 
 
-class Standstill(Block):
-    """Days on which the whole plant stands, spread evenly over the months named."""
+class Standstill(_Days):
+    """Days on which the whole plant stands, by their number or by their dates."""
 
     example: ClassVar[dict[str, Any]] = {"days": 5, "months": [1, 2]}
+    months_needed: ClassVar[bool] = True
 
-    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="5")] = Field(
-        description="Days every year [d].", examples=[5]
+    days: Annotated[float, Quantity(NUMBER, at_least=0, at_most=366, example="5")] | None = Field(
+        default=None,
+        description="Days every year, spread evenly over the months [d].",
+        examples=[5],
     )
-    months: Months = Field(
-        description="Calendar months in which they fall, such as 1, jan or jan-feb.",
+    months: Months | None = Field(
+        default=None,
+        description="Calendar months in which the days fall, such as 1, jan or jan-feb; needed "
+        "with days, if left out.",
         examples=[[1, 2]],
+    )
+    dates: Windows | None = Field(
+        default=None,
+        description="Windows of every year, month-day, both included, over the turn of the year "
+        "where need be. They count as days of their months, in which the river is taken as in the "
+        "whole month.",
+        examples=[["12-20 to 01-10"]],
     )
 
 
@@ -420,6 +492,16 @@ class Operation(Block):
         description="Days on which the whole plant stands, such as for ice or flushing; none if "
         "left out.",
         examples=[Standstill.example],
+    )
+    degradation: Annotated[float, Quantity(SHARE, at_least=0, below=1, example="0.3 %")] | None = (
+        Field(
+            default=None,
+            description="Share of the energy that is lost from each year to the next as the plant "
+            "ages [share or %]. The result stays that of the new plant; the energy after 10, 20 "
+            "and 30 years and the mean over 30 stand beside it. Nothing is said of ageing if left "
+            "out.",
+            examples=["0.3 %"],
+        )
     )
     closed: Months | None = Field(
         default=None,

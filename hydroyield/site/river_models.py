@@ -28,6 +28,7 @@ PRESET_NAMES = (
     "tennant_poor",
 )  # those of river.presets, kept here so that reading a site file needs no numbers
 
+Combination = Literal["largest", "sum", "priority"]
 
 _FLOW = Quantity(DISCHARGE, at_least=0)
 
@@ -211,7 +212,12 @@ Rule = Annotated[AnyRule, Field(discriminator="rule"), WrapValidator(_read_rule)
 
 
 class Abstraction(Block):
-    """Other water that does not reach the turbines."""
+    """Other water that does not reach the turbines.
+
+    Leakage past gates, seals and canal walls is written as an abstraction: with `returns: true`
+    where it reaches the river above the tailwater, as at a weir, with `returns: false` where it
+    does not.
+    """
 
     example: ClassVar[dict[str, Any]] = {"name": "fish pass", "discharge": "0.15 m3/s"}
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime
 import itertools
 
 import numpy as np
@@ -9,7 +10,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from hydroyield.powerhouse.outages import Outages, Spread
+from hydroyield.powerhouse.outages import Dated, Outages, Spread
 
 YEAR = np.array([[31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31]], dtype=float)
 
@@ -50,6 +51,41 @@ def test_closed_months_and_days_of_standstill() -> None:
     assert chances(outages, (1,), 1) == {(1,): 0.0, (0,): 1.0}
     assert chances(outages, (1,), 2) == pytest.approx({(1,): 0.75, (0,): 0.25})
     assert chances(outages, (1,), 3) == {(1,): 1.0, (0,): 0.0}
+
+
+WINDOWS = (((8, 10), (8, 19)), ((2, 20), (3, 5)), ((12, 24), (1, 6)), ((5, 20), (5, 10)))
+
+
+@pytest.mark.parametrize("window", WINDOWS)
+@pytest.mark.parametrize("year", [2001, 2004])
+def test_windows_of_the_year_against_the_calendar(
+    window: tuple[tuple[int, int], tuple[int, int]], year: int
+) -> None:
+    """Every day of a year counted by its date."""
+    lengths = YEAR.copy()
+    lengths[0, 1] = 29 if year == 2004 else 28
+    first, last = window
+    counted = np.zeros(12)
+    day = datetime.date(year, 1, 1)
+    while day.year == year:
+        at = (day.month, day.day)
+        counted[day.month - 1] += (
+            first <= at <= last if first <= last else at >= first or at <= last
+        )
+        day += datetime.timedelta(days=1)
+    dated = Dated((window,))
+    np.testing.assert_allclose(dated.chance(lengths)[0] * lengths[0], counted, atol=1e-12)
+    if year == 2001:
+        assert dated.days == pytest.approx(counted.sum())
+        assert dated.months == tuple(int(m) + 1 for m in np.flatnonzero(counted))
+
+
+def test_units_take_turns_in_a_window() -> None:
+    """Ten days of August: one of two units is out on each, each of them on five."""
+    found = Outages(planned=Dated((((8, 10), (8, 19)),), turns=2))
+    assert chances(found, (2,), 8) == pytest.approx({(2,): 21 / 31, (1,): 10 / 31})
+    assert found.planned is not None
+    assert found.planned.days == pytest.approx(5)
 
 
 def test_a_leap_february_has_a_day_more_for_the_same_days() -> None:

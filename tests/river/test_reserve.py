@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import pytest
@@ -40,22 +40,23 @@ class Case:
     fixed: list[list[float]]
     shares: list[InflowShare]
     abstractions: list[Abstraction]
+    summed: bool = False
 
     @property
     def rules(self) -> WaterRules:
-        return WaterRules.by_month(self.fixed, self.shares, self.abstractions)
+        return WaterRules.by_month(self.fixed, self.shares, self.abstractions, summed=self.summed)
 
     def environmental_flow(self, flow: float, month: int) -> float:
-        largest = 0.0
+        asked = [0.0]
         for twelve in self.fixed:
-            largest = max(largest, twelve[month - 1])
+            asked.append(twelve[month - 1])
         for rule in self.shares:
             if month not in rule.months:
                 continue
-            largest = max(largest, flow - rule.most_taken)
             exceeding = max(0.0, flow - rule.above)
-            largest = max(largest, flow - exceeding + rule.share * exceeding)
-        return min(flow, largest)
+            kept = flow - exceeding + rule.share * exceeding
+            asked.append(max(kept, flow - rule.most_taken))
+        return min(flow, sum(asked) if self.summed else max(asked))
 
     def taken(self, month: int, counted_only: bool = False) -> float:
         return sum(
@@ -75,13 +76,14 @@ cases = st.builds(
     st.lists(shares, max_size=2),
     st.lists(abstractions, max_size=3),
 )
+added = st.builds(replace, cases, summed=st.just(True))
 
 
 def season_of(rules: WaterRules, month: int) -> np.ndarray:
     return rules.season_of_month[[month - 1]]
 
 
-@given(case=cases, flow=flows, month=st.integers(1, 12))
+@given(case=cases | added, flow=flows, month=st.integers(1, 12))
 @settings(max_examples=80, deadline=None)
 def test_against_one_day_at_a_time(case: Case, flow: float, month: int) -> None:
     rules = case.rules
@@ -108,7 +110,18 @@ def test_offered_water_lies_between_nothing_and_the_inflow(case: Case) -> None:
         assert (np.diff(offered) <= np.diff(river) + 1e-12).all()
 
 
-@given(case=cases)
+@given(case=added)
+@settings(max_examples=30, deadline=None)
+def test_rules_that_add_up_offer_no_more_than_the_largest(case: Case) -> None:
+    river, month = np.linspace(0, 60, 121), np.arange(1, 13).repeat(121)
+    river = np.tile(river, 12)
+    most = replace(case, summed=False).rules
+    offered = case.rules.offered(river, case.rules.season_of_month[month - 1])
+    assert (offered >= 0).all()
+    assert (offered <= most.offered(river, most.season_of_month[month - 1]) + 1e-12).all()
+
+
+@given(case=cases | added)
 @settings(max_examples=30, deadline=None)
 def test_water_is_either_offered_taken_or_left(case: Case) -> None:
     """Where there is enough for everyone, river = offered + release + abstractions."""
@@ -165,15 +178,16 @@ def test_a_counted_fish_pass_takes_the_place_of_the_release() -> None:
     assert kept[:2].tolist() == pytest.approx([1.0, 0.8])
 
 
-@given(case=cases)
+@given(case=cases | added)
 @settings(max_examples=30, deadline=None)
 def test_seasons_hold_what_their_months_state(case: Case) -> None:
     rules = case.rules
     for month in range(1, 13):
         season = rules.season_of_month[month - 1]
-        fixed = max([0.0, *(twelve[month - 1] for twelve in case.fixed)])
+        together = sum if case.summed else max
+        fixed = together([0.0, *(twelve[month - 1] for twelve in case.fixed)])
         lost = sum(a.discharge for a in case.abstractions if month in a.months and not a.returns)
-        assert rules.fixed[season] == fixed
+        assert rules.fixed[season] == pytest.approx(fixed)
         assert rules.abstracted[season] == pytest.approx(case.taken(month))
         assert rules.counted[season] == pytest.approx(case.taken(month, True))
         assert rules.unreturned[season] == pytest.approx(lost)
@@ -229,6 +243,25 @@ def test_first_discharge_that_offers_enough_where_steps_fall_back(wanted: float)
     grid = np.linspace(0, 9, 900_001)
     offered = rules.offered(grid, np.zeros(grid.size, int))
     assert found == pytest.approx(grid[(offered >= wanted - 1e-9).argmax()], abs=2e-5)
+
+
+@pytest.mark.parametrize("wanted", [0.2, 0.9, 1.6, 1.85, 1.95])
+@pytest.mark.parametrize("counted", [0.0, 1.4])
+def test_first_discharge_that_offers_enough_where_shares_add_up(
+    wanted: float, counted: float
+) -> None:
+    """Shares of 0.5 and 0.7 keep more than the whole of what comes above 5 m3/s, so that less is
+    offered the more comes; a fine grid finds the first."""
+    shares = [InflowShare(0.5, 1.0), InflowShare(0.7, 0.0, most_taken=5.0)]
+    taken = [Abstraction("fish pass", counted, counts_as_environmental_flow=True)]
+    rules = WaterRules.by_month([[0.1] * 12], shares, taken, summed=True)
+    found, season = rules.smallest_discharge_offering(wanted, 12.0)
+    grid = np.linspace(0, 12, 1_200_001)
+    offered = rules.offered(grid, np.zeros(grid.size, int))
+    if offered.max() < wanted:
+        assert rules.offered(np.array([found]), np.array([season]))[0] < wanted
+    else:
+        assert found == pytest.approx(grid[(offered >= wanted - 1e-9).argmax()], abs=3e-5)
 
 
 # --- published rules ------------------------------------------------------------------------------

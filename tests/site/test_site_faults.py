@@ -214,7 +214,7 @@ PLANT = [
     ("export_limit: 220 kW", "@@export_limit: 0", "electrical.export_limit", "a power above 0"),
     ("export_limit: 220 kW", "@@export_limit: {a: 1}", "electrical.export_limit", "a block of keys stands where a power"),
     ("shutdown_above: 90 m3/s", "@@shutdown_above: 0", "operation.shutdown_above", "a discharge above 0"),
-    ("shutdown_above: 90 m3/s", "@@planned_outage: {months: [8]}", "operation.planned_outage.days", "is missing; write days: 10"),
+    ("shutdown_above: 90 m3/s", "@@planned_outage: {months: [8]}", "operation.planned_outage", "needs one of days, dates; write for example {days: 10"),
     ("shutdown_above: 90 m3/s", "@@forced_outage_rate: 100 %", "operation.forced_outage_rate", "is out of range; write a share"),
     ("operation:\n  shutdown_above: 90 m3/s\n", "@@operation: none\n", "operation", "'none' stands where a block of keys belongs"),
     ("operation:\n  shutdown_above: 90 m3/s\n", "@@operation:\n", "operation", "has no value"),
