@@ -49,6 +49,8 @@ class Scheme:
 
     def with_units(self, counts: tuple[int, ...]) -> Scheme:
         """The same scheme with so many units of each group in service, at least one in all."""
+        if counts == tuple(group.count for group in self.plant.groups):
+            return self
         groups = tuple(
             replace(group, count=count)
             for group, count in zip(self.plant.groups, counts, strict=True)

@@ -28,6 +28,7 @@ HEAD_NODES = (24, 40)  # where heads of all groups end at one level
 HEAD_NODES_OF_TWO_LINES = (8, 20)  # where some end at the tailwater and some at an axis
 HEADS_TRIED = 2001  # for those at which a limit by head begins or ends to limit
 COLUMNS_PER_UNIT = 128
+ROWS_AT_ONCE = 64  # of tables that are combined, which then stay close to the processor
 LEAST_BAND = 0.02  # share by which the least discharge of a plant may miss its column
 COLUMNS = (384, 1024)  # fewest and most, before the search for the number that fits
 COLUMNS_OF_UNLIKE_UNITS = 512  # fewest, where units differ in size or curve
@@ -451,7 +452,12 @@ def max_plus(first: Floats, second: Floats) -> Floats:
         first, second = second, first
     total = np.full((first.shape[0], first.shape[1] + second.shape[1] - 1), -np.inf)
     reach = second.shape[1]
-    for step in np.flatnonzero(np.isfinite(first).any(axis=0)):
-        window = total[:, step : step + reach]
-        np.maximum(window, first[:, step, None] + second, out=window)
+    for top in range(0, first.shape[0], ROWS_AT_ONCE):
+        rows = slice(top, top + ROWS_AT_ONCE)
+        one, other, found = first[rows], second[rows], total[rows]
+        both = np.empty_like(other)
+        for step in np.flatnonzero(np.isfinite(one).any(axis=0)):
+            np.add(one[:, step, None], other, out=both)
+            window = found[:, step : step + reach]
+            np.maximum(window, both, out=window)
     return total

@@ -16,7 +16,7 @@ from hydroyield.energy.beside import AGES, after_years, mean_over_life
 from hydroyield.hydraulics.losses import Pipe, Waterway, rack_coefficient, racks_of_seasons
 from hydroyield.powerhouse import Dated, Outages, Spread
 
-few = settings(deadline=None, max_examples=3, suppress_health_check=[HealthCheck.too_slow])
+few = settings(deadline=None, max_examples=2, suppress_health_check=[HealthCheck.too_slow])
 many = settings(few, max_examples=40)
 
 Draw = Callable[[st.SearchStrategy[Any]], Any]

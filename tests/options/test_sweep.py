@@ -84,7 +84,7 @@ CASES = [
 
 
 @pytest.mark.parametrize(("more", "kind", "split"), CASES)
-@pytest.mark.parametrize("size", [3.0, 16.0])
+@pytest.mark.parametrize("size", [3.0, pytest.param(16.0, marks=pytest.mark.slow)])
 def test_energy_and_capacity_of_other_sizes(
     more: str, kind: str, split: tuple[float, ...], size: float
 ) -> None:

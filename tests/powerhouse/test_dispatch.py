@@ -153,7 +153,6 @@ def away_from_edges(units: list[UnitGroup], head: float, count: int) -> np.ndarr
     return chosen
 
 
-@cache
 def tabulated_and_searched(name: str, limited: bool, head: float) -> tuple[np.ndarray, np.ndarray]:
     """Output by the table and by the search, at the same totals."""
     made, dispatch = tabulated(name, limited)
@@ -167,46 +166,21 @@ def tabulated_and_searched(name: str, limited: bool, head: float) -> tuple[np.nd
 @pytest.mark.parametrize("head", HEADS)
 @pytest.mark.parametrize("limited", [False, True], ids=["open", "limited"])
 @pytest.mark.parametrize("name", PLANTS)
-def test_a_total_can_be_passed_where_some_sharing_can(
-    name: str, limited: bool, head: float
-) -> None:
-    found, expected = tabulated_and_searched(name, limited, head)
-    np.testing.assert_array_equal(np.isfinite(found), np.isfinite(expected))
+def test_output_against_every_sharing(name: str, limited: bool, head: float) -> None:
+    """To 0.1 %, and in the mean to 0.05 %: a quarter of what energy is held to.
 
-
-@pytest.mark.parametrize("head", HEADS)
-@pytest.mark.parametrize("name", PLANTS)
-def test_output_against_every_sharing(name: str, head: float) -> None:
-    """To 0.1 %."""
-    found, expected = tabulated_and_searched(name, False, head)
-    possible = np.isfinite(expected)
-    np.testing.assert_allclose(found[possible], expected[possible], rtol=1e-3)
-
-
-@pytest.mark.parametrize("head", [0.7, 2.3, 4.0, 5.6])
-@pytest.mark.parametrize("name", PLANTS)
-def test_limited_output_against_every_sharing(name: str, head: float) -> None:
-    """To 0.1 % but for single totals, and nowhere beyond 0.3 %.
-
-    Between two heads of the table the lines of the neighbouring intervals are drawn on to where
-    a unit reaches its capacity. Where two units do so in one interval, or the best sharing changes
-    there, that leaves up to 0.2 % at single totals (measured; 5 of 500 here).
+    Where capacity limits, single totals may be off by up to 0.3 %: between two heads of the table
+    the lines of the neighbouring intervals are drawn on to where a unit reaches its capacity. Where
+    two units do so in one interval, or the best sharing changes there, that leaves up to 0.2 % at
+    single totals (measured; 5 of 500 here).
     """
-    found, expected = tabulated_and_searched(name, True, head)
-    possible = np.isfinite(expected)
-    off = np.abs(found[possible] / expected[possible] - 1)
-    assert (off > 1e-3).sum() <= 2
-    np.testing.assert_array_less(off, 3e-3)
-
-
-@pytest.mark.parametrize("head", HEADS)
-@pytest.mark.parametrize("limited", [False, True], ids=["open", "limited"])
-@pytest.mark.parametrize("name", PLANTS)
-def test_mean_output_against_every_sharing(name: str, limited: bool, head: float) -> None:
-    """What energy, held to 0.2 %, rests on: a quarter of that at a single head."""
     found, expected = tabulated_and_searched(name, limited, head)
     possible = np.isfinite(expected)
+    np.testing.assert_array_equal(np.isfinite(found), possible)
     assert found[possible].sum() == pytest.approx(expected[possible].sum(), rel=5e-4)
+    off = np.abs(found[possible] / expected[possible] - 1)
+    assert (off > 1e-3).sum() <= (2 if limited else 0)
+    np.testing.assert_array_less(off, 3e-3)
 
 
 @pytest.mark.parametrize("name", PLANTS)

@@ -116,10 +116,11 @@ def test_last_value_that_was_cut_is_reported(tmp_path: Path, name: str) -> None:
 
 
 @EVERY
-def test_damaged_files_are_read_or_refused(tmp_path: Path, made: FormatFile) -> None:
+@pytest.mark.parametrize("number", [15, pytest.param(200, marks=pytest.mark.slow)])
+def test_damaged_files_are_read_or_refused(tmp_path: Path, made: FormatFile, number: int) -> None:
     """Whatever is cut out of a file, nothing else than a RecordError comes of it."""
     text, chance = made.text(), random.Random(5)
-    for _ in range(60):
+    for _ in range(number):
         start = chance.randrange(len(text))
         damaged = text[:start] + text[start + chance.choice([1, 3, 40, len(text)]) :]
         with contextlib.suppress(RecordError):

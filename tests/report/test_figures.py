@@ -584,7 +584,11 @@ def test_files_are_written_and_repeat_to_the_byte(tmp_path: Path, facts: Facts) 
         assert (tmp_path / f"{spec.name}.svg").read_bytes() == demo_svg(spec).encode()
 
 
-@figures
+@pytest.mark.parametrize(
+    "spec",
+    [*FIGURES[:4], *map(slow, FIGURES[4:])],
+    ids=lambda spec: spec.name,
+)
 def test_the_svg_is_vector_text_on_light_paper(spec: FigureSpec, facts: Facts) -> None:
     svg = demo_svg(spec)
     root = ElementTree.fromstring(svg)
@@ -602,6 +606,7 @@ def test_the_svg_is_vector_text_on_light_paper(spec: FigureSpec, facts: Facts) -
     assert len(svg) < 200_000
 
 
+@pytest.mark.slow
 def test_ids_stay_apart_when_all_figures_share_a_page() -> None:
     ids: list[str] = []
     for spec in FIGURES:

@@ -146,8 +146,19 @@ TAILWATERS = {
     },
     **{f"{name}, held up": form | {"not_below": 98.2} for name, form in RIVERS.items()},
 }
-upper = pytest.mark.parametrize("headwater", HEADWATERS)
-lower = pytest.mark.parametrize("tailwater", TAILWATERS)
+USUAL = {  # every form once, and each of the other keys; all pairs if slow
+    *zip(RIVERS, HEADWATERS, strict=True),
+    ("rating, a tailrace", "weir"),
+    ("channel, drowned", "level"),
+    ("table, held up", "gates"),
+}
+pairs = pytest.mark.parametrize(
+    ("tailwater", "headwater"),
+    [
+        pytest.param(*pair, marks=() if pair in USUAL else pytest.mark.slow)
+        for pair in product(TAILWATERS, HEADWATERS)
+    ],
+)
 
 
 def heads(headwater: str, tailwater: str) -> dict[str, Any]:
@@ -159,8 +170,7 @@ def test_every_form_is_looked_at() -> None:
     assert {key for form in RIVERS.values() for key in form} == set(RiverLevel.exactly_one_of)
 
 
-@upper
-@lower
+@pairs
 def test_levels_rise_with_the_river_and_bound_the_head(headwater: str, tailwater: str) -> None:
     found = levels(read(head=heads(headwater, tailwater)))
     nothing = np.zeros(RIVER.size)
@@ -179,19 +189,7 @@ def test_levels_rise_with_the_river_and_bound_the_head(headwater: str, tailwater
     assert (state.net(taken) <= state.gross(taken)).all()
 
 
-RUN = {  # every form once, and each of the other keys; all pairs if slow
-    *zip(RIVERS, HEADWATERS, strict=True),
-    ("rating, a tailrace", "weir"),
-    ("channel, drowned", "level"),
-    ("table, held up", "gates"),
-}
-PLANTS = [
-    pytest.param(*pair, marks=() if pair in RUN else pytest.mark.slow)
-    for pair in product(TAILWATERS, HEADWATERS)
-]
-
-
-@pytest.mark.parametrize(("tailwater", "headwater"), PLANTS)
+@pairs
 def test_a_plant_runs_on_every_form_and_gains_by_a_higher_headwater(
     headwater: str, tailwater: str, tmp_path: Path
 ) -> None:

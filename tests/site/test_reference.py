@@ -5,11 +5,10 @@ from __future__ import annotations
 import re
 import subprocess
 import sys
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any, get_args
 
-import pytest
 from pydantic import ValidationError
 from pydantic.fields import FieldInfo
 
@@ -38,9 +37,6 @@ def blocks_in(annotation: Any) -> Iterator[type[Block]]:
 
 BLOCKS = list(dict.fromkeys(blocks_in(SiteFile)))
 KEYS = [(block, key) for block in BLOCKS for key in block.model_fields]
-keys = pytest.mark.parametrize(
-    ("block", "key"), KEYS, ids=[f"{block.__name__}-{key}" for block, key in KEYS]
-)
 
 
 def test_the_committed_page_is_current() -> None:
@@ -66,10 +62,20 @@ def test_every_block_is_found() -> None:
     )
 
 
-@keys
-def test_every_key_has_an_example_that_is_read(block: type[Block], key: str) -> None:
+def faults_of_keys(fault: Callable[[type[Block], str], str]) -> list[str]:
+    """What is wrong with each key, empty where nothing is."""
+    found = [(f"{block.__name__}.{key}", fault(block, key)) for block, key in KEYS]
+    return [f"{name}: {wrong}" for name, wrong in found if wrong]
+
+
+def test_every_key_has_an_example_that_is_read() -> None:
+    assert faults_of_keys(_fault_of_example) == []
+
+
+def _fault_of_example(block: type[Block], key: str) -> str:
     field = block.model_fields[key]
-    assert field.examples, "give the field examples=[...]; the page shows the first one"
+    if not field.examples:
+        return "give the field examples=[...]; the page shows the first one"
     written = {
         name: value for name, value in block.example.items() if not _excludes(block, key, name)
     }
@@ -83,7 +89,8 @@ def test_every_key_has_an_example_that_is_read(block: type[Block], key: str) -> 
     try:
         block.model_validate(written)
     except ValidationError as error:
-        pytest.fail(f"{written}: {error}")
+        return f"{written}: {error}"
+    return ""
 
 
 def _excludes(block: type[Block], key: str, other: str) -> bool:
@@ -92,13 +99,14 @@ def _excludes(block: type[Block], key: str, other: str) -> bool:
     return key in block.exactly_one_of and other in block.exactly_one_of
 
 
-@keys
-def test_what_happens_without_a_key_is_told_where_it_may_be_left_out(
-    block: type[Block], key: str
-) -> None:
-    field = block.model_fields[key]
-    told = (field.description or "").endswith(" if left out.")
-    assert told != (field.is_required() or key in block.exactly_one_of)
+def test_what_happens_without_a_key_is_told_where_it_may_be_left_out() -> None:
+    def fault(block: type[Block], key: str) -> str:
+        field = block.model_fields[key]
+        told = (field.description or "").endswith(" if left out.")
+        needed = field.is_required() or key in block.exactly_one_of
+        return f"told: {told}, needed: {needed}" if told == needed else ""
+
+    assert faults_of_keys(fault) == []
 
 
 def quantities_of(field: FieldInfo) -> list[Quantity]:
@@ -119,15 +127,17 @@ def quantities_of(field: FieldInfo) -> list[Quantity]:
     return list(dict.fromkeys(found))
 
 
-@keys
-def test_units_on_the_page_are_those_in_which_a_bare_number_is_read(
-    block: type[Block], key: str
-) -> None:
-    field = block.model_fields[key]
-    held = [quantity.dimension for quantity in quantities_of(field)]
-    wanted = ["share or %" if d is SHARE else d.bare_unit for d in held if d is not NUMBER]
-    if NUMBER not in held:  # plain numbers may have a unit that cannot be written, as m^0.5/s
-        assert units_of(field) == list(dict.fromkeys(wanted))
+def test_units_on_the_page_are_those_in_which_a_bare_number_is_read() -> None:
+    def fault(block: type[Block], key: str) -> str:
+        field = block.model_fields[key]
+        held = [quantity.dimension for quantity in quantities_of(field)]
+        wanted = ["share or %" if d is SHARE else d.bare_unit for d in held if d is not NUMBER]
+        if NUMBER in held:  # plain numbers may have a unit that cannot be written, as m^0.5/s
+            return ""
+        given, wanted = units_of(field), list(dict.fromkeys(wanted))
+        return f"{given}, not {wanted}" if given != wanted else ""
+
+    assert faults_of_keys(fault) == []
     assert ANGLE.bare_unit == "degrees"
 
 
