@@ -15,6 +15,7 @@ import numpy as np
 import pytest
 
 import hydroyield
+from hydroyield import jobs
 from hydroyield.record import read_record
 from hydroyield.site import read_site_file
 from hydroyield.site.river_assembly import record_options
@@ -147,6 +148,30 @@ def test_quernholm_lives_on_its_winter_and_its_export_limit_costs_nothing() -> N
     assert abs(_row(found, "export_limit")) < 0.001
     for step in ("reserved", "above_full_discharge", "levels"):
         assert _row(found, step) < -0.04
+
+
+@pytest.mark.slow
+def test_the_options_of_quernholm_are_what_their_story_tells() -> None:
+    path = DEMO_SITES / "quernholm_weir" / "site.yaml"
+    found = jobs.compare(hydroyield.read_site(path))
+    assert len(found.options) == 40
+    assert not found.refused
+    of = {
+        (option.type, option.combination.split_text, option.combination.design_discharge): option
+        for option in found.options
+    }
+    marginal = {o.number: m for o, m in zip(found.options, found.marginal, strict=True)}
+    quarter = 8766 / 4
+    for kaplans in ("0.5+0.5", "0.33+0.67"):
+        assert marginal[of["kaplan", kaplans, 14].number] < quarter
+        assert marginal[of["kaplan", kaplans, 16].number] < quarter / 6
+    equal, unequal = of["kaplan", "0.5+0.5", 12], of["kaplan", "0.33+0.67", 12]
+    assert 1 < unequal.mean_annual_energy / equal.mean_annual_energy < 1.03
+    assert unequal.standing_hours < equal.standing_hours
+    propellers = of["propeller", "0.5+0.5", 12].mean_annual_energy
+    assert 0.70 < propellers / equal.mean_annual_energy < 0.80
+    best = {choice.aim.name: choice.option.number for choice in found.choices if choice.option}
+    assert best["lowest_levelised_cost"] != best["highest_net_present_value"]
 
 
 def test_quernholm_with_the_level_of_a_dry_summer_promises_too_much() -> None:

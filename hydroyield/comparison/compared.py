@@ -317,8 +317,8 @@ def _checks(
         noted,
         0,
         "No option is outside what is usual for its type and the water.",
-        f"{noted} of {len(options)} options are outside what is usual; the table says why. Look "
-        "at the note of an option before it is chosen.",
+        f"{noted} of {len(options)} options are outside what is usual; the page and "
+        "options.csv say why. Look at the notes of an option before it is chosen.",
     )
     for choice in choices:
         yield warn_unless(

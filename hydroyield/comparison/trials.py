@@ -93,9 +93,8 @@ def _notes(machine: Machine, combination: Combination, found: Estimate) -> Itera
     if kind is None:
         return
     low, high = kind.head_range
-    unusual = next((g.rated_head for g in groups if not low <= g.rated_head <= high), None)
-    if unusual is not None:
-        yield f"a head of {unusual:.3g} m lies outside the usual {low:g} to {high:g} m of the type"
+    if any(not low <= group.rated_head <= high for group in groups):
+        yield f"the rated head lies outside the usual {low:g} to {high:g} m of {machine.type}"
     typical = machine.keys.get("efficiency", "typical") == "typical"
     if typical and min(group.unit_capacity for group in groups) < SMALL_MACHINE:
         yield (

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import product
 
+DIGITS = 12  # of the discharge of a unit, without the rounding of floating point behind them
 EQUAL = 1e-9  # shares closer than this belong to equal units
 
 
@@ -33,7 +34,7 @@ class Combination:
         """(count, discharge of one [m3/s]) of equal units, in the order of the split."""
         found: list[tuple[int, float]] = []
         for share in self.split:
-            discharge = share * self.design_discharge
+            discharge = float(f"{share * self.design_discharge:.{DIGITS}g}")
             if found and abs(found[-1][1] - discharge) <= EQUAL * discharge:
                 found[-1] = (found[-1][0] + 1, found[-1][1])
             else:
@@ -49,6 +50,14 @@ class Combination:
     def split_text(self) -> str:
         """The split as people write it: "0.33+0.67"."""
         return "+".join(f"{share:.4g}" for share in self.split)
+
+    def units(self, type_: str) -> str:
+        """The units as people speak of them: "3 x kaplan", or "kaplan 0.33+0.67".
+
+        type_ : of the turbines
+        """
+        equal = len(self.groups) == 1
+        return f"{self.unit_count} x {type_}" if equal else f"{type_} {self.split_text}"
 
 
 def equal_split(count: int) -> tuple[float, ...]:

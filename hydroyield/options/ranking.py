@@ -16,6 +16,8 @@ from hydroyield.quantities import W_PER_KW, WH_PER_MWH
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 
+ROUNDING = 1e-9  # share by which a number may miss a limit that it is meant to meet
+
 
 def marginal_energy(options: Sequence[Option]) -> list[float | None]:
     """Energy that each further kW brings, against the next smaller option of the same family.
@@ -46,8 +48,10 @@ def frontier(cost: Floats, gain: Floats) -> Bools:
     cost : (n,) what should be small, such as installed capacity
     gain : (n,) what should be large, such as energy
 
-    Options that are equal in both beat each other not.
+    Options that are equal in both beat each other not. Costs that agree to nine digits are equal:
+    the same design discharge gives the same capacity but for rounding.
     """
+    cost = np.array([float(f"{each:.9g}") for each in cost])
     order = np.lexsort((-gain, cost))
     best = np.maximum.accumulate(np.concatenate([[-np.inf], gain[order]]))[:-1]
     first_of_cost = np.concatenate([[True], np.diff(cost[order]) > 0])
@@ -73,8 +77,8 @@ class Limits:
     def allow(self, option: Option) -> bool:
         """Whether an option may be chosen."""
         least, most = self.minimum_capacity_factor, self.maximum_capacity
-        return (least is None or option.capacity_factor >= least) and (
-            most is None or option.installed_capacity <= most
+        return (least is None or option.capacity_factor >= least * (1 - ROUNDING)) and (
+            most is None or option.installed_capacity <= most * (1 + ROUNDING)
         )
 
 

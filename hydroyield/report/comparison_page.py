@@ -13,23 +13,21 @@ import hydroyield
 from hydroyield.comparison.compared import PlantComparison
 from hydroyield.options.differences import in_words
 from hydroyield.options.option import Option
-from hydroyield.quantities import rounded
-from hydroyield.report import words
-from hydroyield.report.comparison_words import (
-    DIGITS,
-    answer,
-    choice_rows,
-    option_name,
-    season_rows,
+from hydroyield.report.comparison_tables import (
+    MOST_ROWS,
+    cost_rows,
+    difference_rows,
+    notes,
+    page_tables,
+    refused,
 )
+from hydroyield.report.comparison_words import answer, choice_rows, option_name, season_rows
 from hydroyield.report.drawn import DrawnFigure, rendered
 from hydroyield.report.figures.options import ChosenPower, Family, OptionFacts
-from hydroyield.report.option_tables import comparison_result, option_row
+from hydroyield.report.option_tables import comparison_result
 from hydroyield.report.result import CAUTION
 from hydroyield.site.option_assembly import options_of
 from hydroyield.site.option_writing import turbines_text
-
-MOST_ROWS = 400  # of the table on the page; options.csv has them all
 
 METHODS = (
     (
@@ -81,23 +79,15 @@ def comparison_page_data(found: PlantComparison, figures: Sequence[DrawnFigure])
         "warnings": [(check.outcome, check.message) for check in found.warnings()],
         "passed": [check.message for check in found.checks if check.outcome == "pass"],
         "other_readings": [],
-        "differences": list(_difference_rows(found)),
+        "differences": difference_rows(found),
         "figures": figures,
-        "columns": _columns(found),
-        "rows": [_row(found, index) for index in range(min(len(found.options), MOST_ROWS))],
+        "tables": page_tables(found),
         "more_rows": max(0, len(found.options) - MOST_ROWS),
-        "refused": [
-            (
-                str(each.number),
-                f"{each.type} {each.combination.split_text}",
-                words.discharge(each.combination.design_discharge),
-                each.reason,
-            )
-            for each in found.refused
-        ],
+        "costs": list(cost_rows(found)),
+        "notes": notes(found),
+        "refused": refused(found),
         "seasons": list(season_rows(found)),
         "sensitivity": list(_sensitivity(found)),
-        "currency": found.site.model.cost.currency if found.site.model.cost else "",
         "blocks": [
             (option_name(option), _block(found, option), f"--write {option.number}")
             for option in chosen_options(found)
@@ -123,79 +113,6 @@ def chosen_options(found: PlantComparison) -> list[Option]:
 
 def _block(found: PlantComparison, option: Option) -> str:
     return turbines_text(found.trial.turbines(option.combination))
-
-
-# --- tables ---------------------------------------------------------------------------------------
-
-
-def _columns(found: PlantComparison) -> list[str]:
-    money = [f"Cost of a kWh, {found.site.model.cost.currency}"] if found.site.model.cost else []
-    if found.economics and found.economics[0].net_present_value is not None:
-        money += ["Net present value", "Rate of return", "Payback, years"]
-    pipe = ["Pipe, m"] if options_of(found.site).pipe_diameters else []
-    return [
-        "Units", "Together, m3/s", *pipe, "Capacity, kW", "MWh a year", "Capacity factor",
-        "Full-load hours", "Water used", "Driest quarter", "Wettest quarter", "Standing, h",
-        "Dry year", "Median year", "Wet year", "kWh of a further kW", *money, "Note",
-    ]  # fmt: skip
-
-
-def _row(found: PlantComparison, index: int) -> dict[str, Any]:
-    option = found.options[index]
-    facts = comparison_row(found, index)
-    return {
-        "number": option.number,
-        "on_frontier": found.on_frontier[index],
-        "cells": facts,
-        "note": "; ".join(option.notes),
-    }
-
-
-def comparison_row(found: PlantComparison, index: int) -> list[str]:
-    """The cells of an option, as the columns say."""
-    row, option = option_row(found, index), found.options[index]
-    cells = [f"{option.type} {row['split']}", rounded(row["design_discharge_m3s"])]
-    if options_of(found.site).pipe_diameters:
-        cells.append(f"{row['pipe_diameter_m']:g}")
-    cells += [
-        _number(row["installed_capacity_kw"], DIGITS),
-        _number(row["mean_annual_energy_mwh"], DIGITS),
-        f"{100 * row['capacity_factor']:.1f} %",
-        f"{row['full_load_hours']:.0f}",
-        f"{100 * row['used_share']:.0f} %",
-        _number(row["driest_quarter_energy_mwh"]),
-        _number(row["wettest_quarter_energy_mwh"]),
-        f"{row['standing_hours']:.0f}",
-        _number(row["dry_year_energy_mwh"], DIGITS),
-        _number(row["median_year_energy_mwh"], DIGITS),
-        _number(row["wet_year_energy_mwh"], DIGITS),
-        _number(row["marginal_energy_kwh_per_kw"]),
-    ]
-    if found.economics:
-        cells.append(_number(row["levelised_cost_per_kwh"]))
-        if found.economics[0].net_present_value is not None:
-            rate = row["internal_rate_of_return_share"]
-            cells += [
-                _number(row["net_present_value"], DIGITS),
-                "" if rate is None else f"{100 * rate:.1f} %",
-                _number(row["simple_payback_years"]),
-            ]
-    return cells
-
-
-def _number(value: float | None, digits: int = 3) -> str:
-    return "" if value is None else rounded(value, digits)
-
-
-def _difference_rows(found: PlantComparison) -> Iterator[tuple[str, ...]]:
-    """Differences among the options with the most energy."""
-    for each in found.differences.pairs if found.differences is not None else ():
-        yield (
-            f"{each.first} less {each.second}",
-            rounded(each.mean),
-            rounded(each.standard_error),
-            "yes" if each.real else "no",
-        )
 
 
 def _sensitivity(

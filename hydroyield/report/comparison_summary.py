@@ -55,7 +55,7 @@ def _most_energy(found: PlantComparison) -> Table:
         mix = option.combination
         table.add_row(
             str(option.number),
-            f"{option.type} {mix.split_text}",
+            mix.units(option.type),
             rounded(mix.design_discharge),
             rounded(option.installed_capacity, DIGITS),
             rounded(option.mean_annual_energy, DIGITS),

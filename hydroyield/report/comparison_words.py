@@ -16,12 +16,9 @@ DIGITS = 4  # options differ in the third
 def option_name(option: Option) -> str:
     """An option as people speak of it: "option 3: 2 x kaplan, 6.2 m3/s together"."""
     mix = option.combination
-    equal = len({round(share, 6) for share in mix.split}) == 1
-    units = f"{mix.unit_count} x {option.type}" if equal else f"{option.type} {mix.split_text}"
     pipe = "" if mix.pipe_diameter is None else f", pipe of {mix.pipe_diameter:g} m"
-    return (
-        f"option {option.number}: {units}, {words.discharge(mix.design_discharge)} together{pipe}"
-    )
+    size = words.discharge(mix.design_discharge)
+    return f"option {option.number}: {mix.units(option.type)}, {size} together{pipe}"
 
 
 def answer(found: PlantComparison) -> str:
@@ -31,10 +28,13 @@ def answer(found: PlantComparison) -> str:
     total = f"{len(found.options)} options computed{refused}."
     if chosen is None:
         return f"{total} None keeps the limits."
+    close = 0 if found.differences is None else len(found.differences.indistinguishable)
+    apart = "another cannot" if close == 1 else f"{close} others cannot"
     return (
         f"{total} The most energy: {option_name(chosen)}, "
         f"{rounded(chosen.mean_annual_energy, DIGITS)} MWh a year at a capacity factor of "
-        f"{words.percent(chosen.capacity_factor)}."
+        f"{words.percent(chosen.capacity_factor)}"
+        + (f"; {apart} be told apart from it with the evidence at hand." if close else ".")
     )
 
 

@@ -182,7 +182,7 @@ def _basis(estimate: SiteEstimate) -> Rows:
 def _rule_costs(estimate: SiteEstimate) -> Rows:
     if not estimate.rule_costs:
         return []
-    *each, together = (f"{words.signed(mwh)} MWh" for mwh in _clear(estimate.rule_costs))
+    *each, together = (f"{rounded(mwh)} MWh" for mwh in _clear(estimate.rule_costs))
     apart = f" (rule by rule {', '.join(each)}; rules overlap)" if len(each) > 1 else ""
     days = f"{estimate.days_at_residual_flow:.0f} days a year"
     return [

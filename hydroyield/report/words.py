@@ -24,11 +24,6 @@ def energy(mwh: float) -> str:
     return f"{rounded(mwh)} MWh"
 
 
-def signed(value: float) -> str:
-    """A number to three significant figures, a minus in front where it is negative."""
-    return ("-" if value < 0 else "") + rounded(abs(value))
-
-
 def head(metres: float) -> str:
     """Head to 0.01 m under 10 m, else to three significant figures."""
     return f"{metres:.2f} m" if abs(metres) < 10 else f"{rounded(metres)} m"
@@ -62,14 +57,14 @@ def months_in_turn(numbers: tuple[int, ...]) -> str:
 
 
 def months(numbers: tuple[int, ...] | None) -> str:
-    """Months in words; a run of months as a range."""
+    """Months in words; a run of months as a range, over the turn of the year where need be."""
     if numbers is None or len(numbers) == len(MONTH_NAMES):
         return "all year"
     ordered = sorted(numbers)
-    names = [MONTH_NAMES[number - 1] for number in ordered]
-    if len(ordered) > 2 and ordered == list(range(ordered[0], ordered[-1] + 1)):
-        return f"{names[0]} to {names[-1]}"
-    return ", ".join(names)
+    first = [number for number in ordered if (number - 2) % 12 + 1 not in ordered]
+    if len(ordered) > 2 and len(first) == 1:
+        return months_in_turn(tuple((first[0] - 1 + n) % 12 + 1 for n in range(len(ordered))))
+    return ", ".join(MONTH_NAMES[number - 1] for number in ordered)
 
 
 # --- what the estimate rests on -------------------------------------------------------------------

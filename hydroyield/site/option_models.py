@@ -6,7 +6,8 @@ from collections.abc import Iterable, Mapping
 from collections.abc import Set as AbstractSet
 from typing import Annotated, Any, ClassVar, get_args
 
-from pydantic import BeforeValidator, Field, WithJsonSchema
+from pydantic import BeforeValidator, Field, GetJsonSchemaHandler, WithJsonSchema
+from pydantic_core import CoreSchema
 
 from hydroyield.quantities import DISCHARGE, LENGTH, NUMBER, PERCENT, POWER, SHARE
 from hydroyield.site.blocks import Block
@@ -84,7 +85,17 @@ def _machine(value: Any) -> Any:
     return {"type": value} if isinstance(value, str) else value
 
 
-Machine = Annotated[OptionMachine, BeforeValidator(_machine)]
+class _OrWord:
+    """Tells the schema that the word for a type may stand for the block."""
+
+    def __get_pydantic_json_schema__(
+        self, block: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        word = {"type": "string", "enum": list(get_args(TurbineType))}
+        return {"anyOf": [word, handler(block)]}
+
+
+Machine = Annotated[OptionMachine, BeforeValidator(_machine), _OrWord()]
 
 
 class MachineUncertainty(Block):

@@ -187,7 +187,7 @@ def test_an_effect_alone(name: str, tmp_path: Path) -> None:
     assert energy(tmp_path, **blocks) == pytest.approx(mean * KW * YEAR, rel=CLOSE)
 
 
-@pytest.mark.parametrize("name", set(EFFECTS) - {"nothing"})
+@pytest.mark.parametrize("name", list(EFFECTS)[1:])
 def test_an_effect_is_seen(name: str) -> None:
     """A formula that gives the plain value could not tell whether its effect was switched on."""
     same = {

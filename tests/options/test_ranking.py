@@ -65,6 +65,13 @@ def test_frontier_against_all_pairs(points: list[tuple[int, int]]) -> None:
     assert frontier(cost, gain).tolist() == expected
 
 
+def test_capacities_that_differ_by_rounding_are_one() -> None:
+    """Of 100 kW twice, but for floating point, only the one with more energy is not beaten."""
+    found = frontier(np.array([100.00000000003, 100.0, 90.0]), np.array([600.0, 599.0, 500.0]))
+    assert found.tolist() == [True, False, True]
+    assert Limits(maximum_capacity=100).allow(option(1, 100 * (1 + 1e-12), 600))
+
+
 def test_the_largest_energy_within_limits() -> None:
     small, middle, large = option(1, 100, 600), option(2, 200, 900), option(3, 300, 1000)
     aim = energy_aims(None)[0]

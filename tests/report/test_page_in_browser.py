@@ -16,12 +16,14 @@ from pathlib import Path
 import pytest
 
 import hydroyield
-from hydroyield.report.figures import FIGURES
+from hydroyield import jobs
+from hydroyield.report.comparison_files import write_comparison_page
 from hydroyield.report.files import write_page, write_tables
 from hydroyield.report.progress import Steps
 
 CHROMIUM, DRIVER = shutil.which("chromium"), shutil.which("chromedriver")
 HERE = Path(__file__).resolve().parents[2]
+OPTIONS = "plant options"  # the page of a comparison
 DEMOS = sorted(path.parent.name for path in (HERE / "demo_sites").glob("*/site.yaml"))
 
 if not (CHROMIUM and DRIVER) and os.environ.get("HYDROYIELD_REQUIRE_BROWSER"):
@@ -58,11 +60,14 @@ def written(folder: Path, site: Path) -> Path:
     return folder / "report.html"
 
 
-@pytest.fixture(scope="module", params=DEMOS)
+@pytest.fixture(scope="module", params=[*DEMOS, OPTIONS])
 def page(request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactory) -> Path:
-    return written(
-        tmp_path_factory.mktemp(request.param), HERE / "demo_sites" / request.param / "site.yaml"
-    )
+    folder = tmp_path_factory.mktemp("page")
+    if request.param != OPTIONS:
+        return written(folder, HERE / "demo_sites" / request.param / "site.yaml")
+    site = hydroyield.read_site(HERE / "demo_sites" / "quernholm_weir" / "site.yaml")
+    write_comparison_page(jobs.compare(site), folder, Steps(0, wanted=False))
+    return folder / "report.html"
 
 
 def opened(browser: object, page: Path, width: int = 1000, scheme: str = "light") -> object:
@@ -101,7 +106,7 @@ def test_every_figure_is_drawn_within_the_page(browser: object, page: Path, widt
         "return [...document.images].map(i => [i.complete, i.naturalWidth,"
         " i.getBoundingClientRect().left, i.getBoundingClientRect().right, i.alt])"
     )
-    assert len(images) == len(FIGURES)
+    assert len(images) == len(list((page.parent / "figures").glob("*.svg"))) >= 4
     for complete, natural, left, right, alt in images:
         assert complete
         assert natural > 0
@@ -183,6 +188,19 @@ def test_printed_on_a4_no_figure_is_cut(browser: object, page: Path) -> None:
         with_caption = [words for words in text if f"Figure {number}. " in words]
         assert len(with_caption) == 1
         assert "".join(title.split()) in "".join(with_caption[0].split())
+
+
+def test_printed_on_a4_no_table_is_cut(browser: object, page: Path) -> None:
+    """182 mm between the margins are 688 pixels."""
+    opened(browser, page, width=688)
+    browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "print"})
+    cut = browser.execute_script(
+        "return [...document.querySelectorAll('table, pre')].filter(t =>"
+        " t.getBoundingClientRect().left + t.scrollWidth > innerWidth + 1)"
+        ".map(t => t.textContent.slice(0, 60))"
+    )
+    browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
+    assert cut == []
 
 
 def test_a_hostile_name_is_shown_as_text(browser: object, tmp_path: Path) -> None:

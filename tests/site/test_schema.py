@@ -53,6 +53,20 @@ def test_starting_files_and_demos_are_in_order(path: Path) -> None:
     assert faults_of(yaml.safe_load(path.read_text(encoding="utf-8"))) == []
 
 
+def test_what_is_shown_as_an_example_is_in_order() -> None:
+    schema = site_schema()
+    faults = [
+        f"{name}.{key}: {fault.message}"
+        for name, block in {"SiteFile": schema, **schema["$defs"]}.items()
+        for key, entry in block["properties"].items()
+        for example in entry["examples"]
+        for fault in jsonschema.Draft202012Validator(
+            entry | {"$defs": schema["$defs"]}
+        ).iter_errors(example)
+    ]
+    assert faults == []
+
+
 @pytest.mark.parametrize("text", TEXTS.values(), ids=TEXTS)
 def test_examples_are_in_order(text: str) -> None:
     assert faults_of(yaml.safe_load(text)) == []
