@@ -63,10 +63,10 @@ def entries(docstring: str) -> Iterator[tuple[list[str], str]]:
             text.append(line)
 
 
-@pytest.mark.parametrize("path", modules(), ids=lambda path: f"{path.parent.name}/{path.stem}")
-def test_documented_quantities_carry_a_unit(path: Path) -> None:
+def test_documented_quantities_carry_a_unit() -> None:
     lacking = [
-        f"{owner}: {name}"
+        f"{path.parent.name}/{path.stem}, {owner}: {name}"
+        for path in modules()
         for owner, docstring in docstrings(path)
         for names, text in entries(docstring)
         for name in names

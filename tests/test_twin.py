@@ -81,7 +81,7 @@ def test_exact_integral_of_a_straight_duration_curve(
     tmp_path: Path, minimum: float, mean_turbined: float
 ) -> None:
     """Derived: Q(p) = 10 (1 - p), full discharge Qd 5: Qd - Qd^2/2Qmax - Qmin^2/2Qmax."""
-    values = [10 * (k + 0.5) / 200 for k in range(200)]  # 1 and 5 m3/s lie between two days
+    values = [10 * (k + 0.5) / 100 for k in range(100)]  # 1 and 5 m3/s lie between two days
     turbines = [PLAIN_UNIT | {"minimum_discharge": minimum}]
     plant = twin.load(write(tmp_path, values, turbines=turbines))
     turbined = 0.0
@@ -90,8 +90,8 @@ def test_exact_integral_of_a_straight_duration_curve(
             plant, discharge, twin.share_water(plant, day.month, discharge), None
         )
         turbined += sum(rows.values()) / (9810 * 10 * 0.85)
-    assert turbined / 200 == pytest.approx(mean_turbined, rel=1e-6)
-    assert turbined / 200 * 9.81 * 10 * 0.85 * 8.76 == pytest.approx(
+    assert turbined / 100 == pytest.approx(mean_turbined, rel=1e-6)
+    assert turbined / 100 * 9.81 * 10 * 0.85 * 8.76 == pytest.approx(
         2739.2 * mean_turbined / 3.75, rel=1e-5
     )
 

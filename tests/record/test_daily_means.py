@@ -49,7 +49,7 @@ def irregular_points(draw: st.DrawFn) -> tuple[list[int], list[float]]:
     return times, values
 
 
-@settings(deadline=None, max_examples=300)
+@settings(deadline=None, max_examples=100)
 @given(irregular_points())
 def test_against_the_plain_loop(points: tuple[list[int], list[float]]) -> None:
     times, values = points

@@ -65,6 +65,7 @@ def test_an_unknown_layout_is_refused_with_those_that_are_known(layout: str, hin
     assert str(caught.value) == f"layout: {known}{hint}"
 
 
+@pytest.mark.slow
 def test_an_installed_package_brings_its_own(tmp_path: Path) -> None:
     """As in a wheel, into which the folder is put as hydroyield/site_configs."""
     settings = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))
