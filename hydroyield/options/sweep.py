@@ -20,8 +20,8 @@ from numpy.typing import NDArray
 from hydroyield.energy import Estimate
 from hydroyield.energy.scheme import Scheme
 from hydroyield.hydraulics import HeadState
-from hydroyield.powerhouse import HillChart, Plant
-from hydroyield.powerhouse.dispatch import DispatchTable, HeadLines
+from hydroyield.powerhouse import HeadLines, HillChart, Plant
+from hydroyield.powerhouse.dispatch import DispatchTable
 from hydroyield.quantities import W_PER_KW, WH_PER_MWH
 from hydroyield.river import Cells
 
@@ -212,7 +212,7 @@ def _relative_output(
     dispatch = DispatchTable(plant, HeadLines.of(plant.groups), heads[None, :])
     opening = np.linspace(0, 1, dispatch.columns + 1)
     every_head = np.repeat(heads, opening.size)[None, :]
-    full = dispatch.full_discharge(every_head)
+    full = dispatch.grid.full_discharge(every_head)
     found = dispatch.output(every_head, np.tile(opening, heads.size) * full)
     water = plant.specific_weight * full * every_head[0]
     share = (np.maximum(found, 0.0) / water).reshape(heads.size, opening.size)

@@ -1,7 +1,7 @@
 """Turbines, generators and how the units of a plant share the water."""
 
-from hydroyield.powerhouse.dispatch import HeadLines
 from hydroyield.powerhouse.dispatcher import Dispatcher
+from hydroyield.powerhouse.grid import HeadLines
 from hydroyield.powerhouse.operation import Operation, operate
 from hydroyield.powerhouse.outages import Dated, Outages, Spread
 from hydroyield.powerhouse.types import MachineType, machine_types

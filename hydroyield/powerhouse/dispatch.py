@@ -5,55 +5,24 @@ the best sharing is a max-plus sum over the units' power: the best of a and b to
 the largest a(i) + b(k - i). Units of one group are not assumed to share equally; where efficiency
 rises steeply with discharge it is often better to run one unit full and another low.
 
-A table has a row for each node of head, and columns in shares of the discharge of the fully open
-plant. In these shares the minimum and the full opening of a unit hardly move with head, so the
-number of columns is chosen such that both fall on columns.
+The rows and columns of a table are those of a `Grid`.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
-from hydroyield.powerhouse.units import BranchCurve, HillChart, Plant, UnitGroup
+from hydroyield.powerhouse.grid import Grid, HeadLines
+from hydroyield.powerhouse.units import Plant
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-# Rows stand at even steps of head, and at even shares of the heads that occur:
-HEAD_NODES = (24, 40)  # where heads of all groups end at one level
-HEAD_NODES_OF_TWO_LINES = (8, 20)  # where some end at the tailwater and some at an axis
-HEADS_TRIED = 2001  # for those at which a limit by head begins or ends to limit
-COLUMNS_PER_UNIT = 128
 ROWS_AT_ONCE = 64  # of tables that are combined, which then stay close to the processor
 LEAST_BAND = 0.02  # share by which the least discharge of a plant may miss its column
-COLUMNS = (384, 1024)  # fewest and most, before the search for the number that fits
-COLUMNS_OF_UNLIKE_UNITS = 512  # fewest, where units differ in size or curve
-
-
-@dataclass(frozen=True)
-class HeadLines:
-    """The distinct lower ends of head in a plant: the tailwater (None) and the axis levels.
-
-    A tailwater line and an axis line vary independently; two axis lines differ by a constant.
-    """
-
-    lower_ends: tuple[float | None, ...]
-    line_of_group: tuple[int, ...]
-
-    @classmethod
-    def of(cls, groups: tuple[UnitGroup, ...]) -> HeadLines:
-        ends = sorted({g.axis_level for g in groups}, key=lambda e: (e is not None, e or 0.0))
-        return cls(tuple(ends), tuple(ends.index(g.axis_level) for g in groups))
-
-    @property
-    def free(self) -> tuple[int, ...]:
-        """Lines that span all heads: the tailwater and the first axis, as far as they occur."""
-        kinds = [end is None for end in self.lower_ends]
-        return tuple(kinds.index(kind) for kind in (True, False) if kind in kinds)
 
 
 class DispatchTable:
@@ -65,11 +34,7 @@ class DispatchTable:
     def __init__(self, plant: Plant, lines: HeadLines, seen: Floats) -> None:
         """Tabulate `plant` for heads like those `seen` (lines, m) [m], the highest among them."""
         self.plant, self.lines = plant, lines
-        self._nodes = [self._head_nodes(line, seen[line]) for line in lines.free]
-        self._z = [self._stretched(nodes) for nodes in self._nodes]
-        self._row_heads = self._heads_of_rows()
-        self._row_z = self._reference(self._row_heads)
-        self._unit_steps, self._columns = self._choose_steps()
+        self.grid = Grid(plant, lines, seen)
         self._units = [self._unit_output(n) for n in range(len(plant.groups))]
         self._stages = self._combine()
         self._values = self._stages[-1]
@@ -79,158 +44,26 @@ class DispatchTable:
     @property
     def columns(self) -> int:
         """Steps from no water to the open plant, of units that scale alike with head."""
-        return int(self._columns[0])
-
-    # --- what the table is laid on -------------------------------------------------------------
-
-    @property
-    def _alike(self) -> bool:
-        """Whether the full discharges of all groups scale alike with head."""
-        exponents = {group.head_exponent for group in self.plant.groups}
-        return len(exponents) == 1 and len(self.lines.lower_ends) == 1
-
-    @property
-    def _scales(self) -> bool:
-        """Whether the rows of all heads have one shape, up to the capacities."""
-        charts = any(isinstance(group.curve, HillChart) for group in self.plant.groups)
-        return self._alike and not charts
-
-    def _stretched(self, head: Floats) -> Floats:
-        """Scale on which the power of an open unit is linear: H^1.5, for screws H."""
-        largest = max(group.head_exponent for group in self.plant.groups)
-        return np.asarray(head * np.sqrt(head) if largest else head)
-
-    def _reference(self, heads: Floats) -> Floats:
-        """Scale of power at heads (lines, n): the sum of the stretched heads of the free lines."""
-        scale = np.zeros(heads.shape[1])
-        for line in self.lines.free:
-            scale += self._stretched(heads[line])
-        return scale
-
-    def _head_nodes(self, line: int, seen: Floats) -> Floats:
-        """Heads of the rows: 0, the heads at which a capacity begins to limit, and some more.
-
-        Below every limit the rows of units that scale alike with head are one, and need no nodes.
-        """
-        highest = max(1e-3, float(seen.max())) * (1 + 1e-9)
-        limits = [
-            self._limiting_head(group)
-            for group, own in zip(self.plant.groups, self.lines.line_of_group, strict=True)
-            if own == line
-        ]
-        limits = [head for head in limits if head < highest]
-        bends = [
-            head
-            for group, own in zip(self.plant.groups, self.lines.line_of_group, strict=True)
-            if own == line and group.output_limit is not None
-            for head in self._bends_of_limit(group, highest)
-        ]
-        straight = self._scales and self.plant.electrical.load_curve is None and not bends
-        if straight and not limits:
-            return np.array([0.0, highest])
-        lowest = min(limits) if straight else 0.0
-        even, shares = HEAD_NODES if len(self.lines.free) == 1 else HEAD_NODES_OF_TWO_LINES
-        inner = seen[(seen > lowest) & (seen < highest)]
-        spread = np.quantile(inner, np.linspace(0, 1, shares)) if inner.size else inner
-        return _apart([0.0, *limits, *bends, *np.linspace(lowest, highest, even), *spread])
-
-    def _limiting_head(self, group: UnitGroup) -> float:
-        """Net head above which a unit can exceed its capacity."""
-        rated = group.rated_discharge * group.rated_head * group.best_relative_output
-        needed = float(self.plant.water_needed(group, np.array(group.unit_capacity)))
-        ratio = needed / max(rated, 1e-300)
-        return float(group.rated_head * ratio ** (1 / (1 + group.head_exponent)))
-
-    def _bends_of_limit(self, group: UnitGroup, highest: float) -> list[float]:
-        """Heads up to the highest at which a limit by head bends, or begins or ends to limit."""
-        assert group.output_limit is not None
-        head = np.linspace(0, highest, HEADS_TRIED)
-        water = group.full_discharge(head) * head * group.best_relative_output
-        spare = group.most_output(head) - self.plant.terminal_output(group, water)
-        crosses = np.flatnonzero(spare[:-1] * spare[1:] < 0)
-        part = spare[crosses] / (spare[crosses] - spare[crosses + 1])
-        whole = group.curve.head_left(np.array(1.0)) if isinstance(group.curve, BranchCurve) else 1
-        bends = np.array(group.output_limit.heads) / whole
-        met = head[crosses] + part * np.diff(head)[crosses]
-        return [float(found) for found in (*met, *bends) if 0 < found < highest]
-
-    def _heads_of_rows(self) -> Floats:
-        """(lines, rows) head of each line in each row."""
-        grid = np.stack(np.meshgrid(*self._nodes, indexing="ij")).reshape(len(self._nodes), -1)
-        ends = self.lines.lower_ends
-        heads = np.empty((len(ends), grid.shape[1]))
-        for row, line in zip(grid, self.lines.free, strict=True):
-            for other, end in enumerate(ends):
-                if end is None and ends[line] is None:
-                    heads[other] = row
-                elif end is not None and ends[line] is not None:
-                    heads[other] = np.maximum(0.0, row + (ends[line] or 0.0) - end)
-        return heads
-
-    def full_discharges(self, heads: Floats) -> Floats:
-        """(groups, n) discharge of one fully open unit of each group [m3/s]."""
-        return np.stack(
-            [
-                group.full_discharge(heads[line])
-                for group, line in zip(self.plant.groups, self.lines.line_of_group, strict=True)
-            ]
-        )
-
-    def full_discharge(self, heads: Floats) -> Floats:
-        """(n,) discharge of all units fully open [m3/s] at heads (lines, n) [m]."""
-        total = np.zeros(heads.shape[1])
-        for group, full in zip(self.plant.groups, self.full_discharges(heads), strict=True):
-            total += group.count * full
-        return total
-
-    def _choose_steps(self) -> tuple[Ints, Ints]:
-        """(groups, rows) steps of a fully open unit, and (rows,) columns of the open plant.
-
-        The number of columns is the one at which full openings and minima fall closest to columns.
-        """
-        counts = np.array([group.count for group in self.plant.groups])
-        minima = np.array([group.minimum_share for group in self.plant.groups])
-        # at no head every unit would be shut: take the shares of a small one
-        heads = np.maximum(self._row_heads, 1e-6)
-        shares = self.full_discharges(heads[:, :1] if self._alike else heads)
-        shares = shares / (counts[:, None] * shares).sum(axis=0)
-        fewest = int(np.clip(COLUMNS_PER_UNIT * counts.sum(), *COLUMNS))
-        if counts.size > 1:
-            fewest = max(fewest, COLUMNS_OF_UNLIKE_UNITS)
-        tried = np.arange(fewest, 2 * fewest)
-        exact = shares[:, :, None] * tried  # (groups, rows, tried)
-        steps = np.maximum(1, np.rint(exact))
-        least = minima[:, None, None] * exact
-        off = np.maximum(np.abs(exact - steps), np.abs(least - np.rint(least))).max(axis=0)
-        best = off.argmin(axis=1)
-        chosen = np.take_along_axis(steps, best[None, :, None], axis=2)[:, :, 0].astype(np.int64)
-        chosen = np.broadcast_to(chosen, (counts.size, self._row_heads.shape[1]))
-        return chosen, np.asarray((counts[:, None] * chosen).sum(axis=0))
+        return int(self.grid.columns[0])
 
     # --- the table ------------------------------------------------------------------------------
-
-    def _exact_steps(self, number: int) -> Floats:
-        """(rows,) columns that one fully open unit of a group takes, not rounded."""
-        heads = np.maximum(self._row_heads, 1e-6)
-        full = self.full_discharges(heads)[number]
-        return np.asarray(full / self.full_discharge(heads) * self._columns)
 
     def _unit_output(self, number: int) -> Floats:
         """(rows, steps + 1) output of one unit of a group over the scale of its row; -inf where
         it cannot run at that discharge, 0 at a stand."""
-        group, steps = self.plant.groups[number], self._unit_steps[number]
-        head = self._row_heads[self.lines.line_of_group[number]]
+        group, steps = self.plant.groups[number], self.grid.unit_steps[number]
+        head = self.grid.row_heads[self.lines.line_of_group[number]]
         column = np.arange(steps.max() + 1)
-        share = column / self._exact_steps(number)[:, None]
+        share = column / self.grid.exact_steps(number)[:, None]
         share = np.where(column == steps[:, None], 1.0, share)
         first = np.rint(group.minimum_share * steps)[:, None]
         runs = (column >= first) & (column <= steps[:, None])
         share = np.clip(share, group.minimum_share, 1.0)
         # rows at no head borrow the shape of a small head, so that all rows have one scale
         head = np.maximum(head, 1e-6)
-        scale = self._reference(np.maximum(self._row_heads, 1e-6))[:, None]
+        scale = self.grid.scale(np.maximum(self.grid.row_heads, 1e-6))[:, None]
         open_water = (group.full_discharge(head) * head)[:, None]
-        if self._scales and steps.min() == steps.max():
+        if self.grid.one_shape and steps.min() == steps.max():
             relative = np.broadcast_to(share[:1] * group.efficiency(share[:1], 1.0), share.shape)
         else:
             relative = share * group.efficiency(share, head[:, None])
@@ -277,22 +110,6 @@ class DispatchTable:
 
     # --- reading it -----------------------------------------------------------------------------
 
-    def _corners(self, heads: Floats) -> list[tuple[Ints, Floats]]:
-        """Rows around heads (lines, n), and the weight of each in the scaled output."""
-        corners: list[tuple[Ints, Floats]] = [
-            (np.zeros(heads.shape[1], dtype=np.int64), np.ones(heads.shape[1]))
-        ]
-        for nodes, line in zip(self._z, self.lines.free, strict=True):
-            z = np.clip(self._stretched(heads[line]), 0, nodes[-1])
-            low = np.clip(np.searchsorted(nodes, z, side="right") - 1, 0, nodes.size - 2)
-            part = (z - nodes[low]) / (nodes[low + 1] - nodes[low])
-            corners = [
-                (row * nodes.size + low + step, weight * share)
-                for row, weight in corners
-                for step, share in ((0, 1 - part), (1, part))
-            ]
-        return [(row, weight * self._row_z[row]) for row, weight in corners]
-
     def output(self, heads: Floats, discharge: Floats) -> Floats:
         """Largest output of units that pass exactly this total.
 
@@ -301,10 +118,10 @@ class DispatchTable:
 
         Returns (n,) [W], -inf where no sharing passes exactly this total.
         """
-        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
+        share = discharge / np.maximum(self.grid.full_discharge(heads), 1e-300)
         total, settled = np.zeros(discharge.shape), np.zeros(discharge.shape)
         weights = np.zeros(discharge.shape)
-        for row, weight in self._corners(heads):
+        for row, weight in self.grid.corners(heads):
             value = self._along(row, share)
             usable = np.isfinite(value)
             total += np.where(usable, weight * np.where(usable, value, 0.0), 0.0)
@@ -314,8 +131,8 @@ class DispatchTable:
         feasible = (settled > 0.5 * weights) & (share <= 1 + 1e-6)
         scale = np.divide(weights, settled, out=np.zeros_like(weights), where=settled > 0)
         output = np.where(feasible, total * scale, np.where(discharge == 0, 0.0, -np.inf))
-        if len(self._z) == 1 and self._z[0].size > 3:
-            bent = np.flatnonzero(feasible & (heads[self.lines.free[0]] > self._nodes[0][1]))
+        if len(self.grid.stretched) == 1 and self.grid.stretched[0].size > 3:
+            bent = np.flatnonzero(feasible & (heads[self.lines.free[0]] > self.grid.nodes[0][1]))
             if bent.size:
                 output[bent] = self._with_bend(heads[:, bent], share[bent], output[bent])
         return self._at_least_discharge(heads, discharge, output)
@@ -324,7 +141,7 @@ class DispatchTable:
         """Output, exact about the least discharge of the plant, which may miss its column a bit."""
         groups, lines = self.plant.groups, self.lines.line_of_group
         minima = np.array([group.minimum_share for group in groups])[:, None]
-        first = (self.full_discharges(heads) * minima).argmin(axis=0)
+        first = (self.grid.full_discharges(heads) * minima).argmin(axis=0)
         least = self._least(heads)
         output = np.where((discharge > 0) & (discharge < least * (1 - 1e-9)), -np.inf, output)
         near = (discharge >= least * (1 - 1e-9)) & (discharge < least * (1 + LEAST_BAND))
@@ -346,13 +163,13 @@ class DispatchTable:
         are drawn on to where they meet; where they do not bound the chord from one side, the
         chord stays.
         """
-        nodes = self._z[0]
-        z = np.clip(self._stretched(heads[self.lines.free[0]]), 0, nodes[-1])
+        nodes = self.grid.stretched[0]
+        z = np.clip(self.grid.stretch(heads[self.lines.free[0]]), 0, nodes[-1])
         low = np.clip(np.searchsorted(nodes, z, side="right") - 1, 1, nodes.size - 3)
         rows = [low - 1, low, low + 1, low + 2]
         z0, z1, z2, z3 = (nodes[row] for row in rows)
         with np.errstate(invalid="ignore"):  # where a row cannot pass this total the chord stays
-            p0, p1, p2, p3 = (self._along(row, share) * self._row_z[row] for row in rows)
+            p0, p1, p2, p3 = (self._along(row, share) * self.grid.row_scale[row] for row in rows)
             left = p1 + (p1 - p0) / (z1 - z0) * (z - z1)
             right = p2 - (p3 - p2) / (z3 - z2) * (z2 - z)
             falls = np.minimum(np.minimum(left, right), np.minimum(p1 * z / z1, p2))
@@ -364,10 +181,10 @@ class DispatchTable:
 
     def _along(self, row: Ints, share: Floats) -> Floats:
         """Scaled output in given rows at shares of the open plant's discharge."""
-        position = share * self._columns[row]
+        position = share * self.grid.columns[row]
         nearest = np.rint(position)
         position = np.where(np.abs(position - nearest) < 1e-5 * self._width, nearest, position)
-        position = np.clip(position, 0, self._columns[row])
+        position = np.clip(position, 0, self.grid.columns[row])
         low = position.astype(np.int64)
         part = position - low
         flat = self._values.ravel()
@@ -387,22 +204,17 @@ class DispatchTable:
 
         Returns (n,), the least of equals: on a column of the table, or the plant's exact least.
         """
-        fully_open = np.maximum(self.full_discharge(heads), 1e-300)
-        row = self._nearest_row(heads)
+        fully_open = np.maximum(self.grid.full_discharge(heads), 1e-300)
+        row = self.grid.nearest_row(heads)
         share = np.minimum(discharge / fully_open, 1.0)
-        low = np.floor(share * self._columns[row] + 1e-6).astype(np.int64)
-        best = self._best_below[row, low] / self._columns[row]
+        low = np.floor(share * self.grid.columns[row] + 1e-6).astype(np.int64)
+        best = self._best_below[row, low] / self.grid.columns[row]
         return np.where(best > 0, np.maximum(best, self._least(heads) / fully_open), 0.0)
 
     def _least(self, heads: Floats) -> Floats:
         """(n,) least discharge of the plant [m3/s]."""
         minima = np.array([group.minimum_share for group in self.plant.groups])[:, None]
-        return np.asarray((self.full_discharges(heads) * minima).min(axis=0))
-
-    def _nearest_row(self, heads: Floats) -> Ints:
-        corners = self._corners(heads)
-        heaviest = np.argmax([weight for _, weight in corners], axis=0)
-        return np.asarray(np.choose(heaviest, [row for row, _ in corners]))
+        return np.asarray((self.grid.full_discharges(heads) * minima).min(axis=0))
 
     def unit_shares(self, heads: Floats, discharge: Floats) -> Floats:
         """Discharge of each unit as a share of its full discharge.
@@ -413,9 +225,9 @@ class DispatchTable:
         Returns (units, n), units in the order of the groups; 0 for a unit that stands. The shares
         are those of the nearest row and column of the table.
         """
-        row = self._nearest_row(heads)
-        share = discharge / np.maximum(self.full_discharge(heads), 1e-300)
-        left = np.rint(np.minimum(share, 1.0) * self._columns[row]).astype(np.int64)
+        row = self.grid.nearest_row(heads)
+        share = discharge / np.maximum(self.grid.full_discharge(heads), 1e-300)
+        left = np.rint(np.minimum(share, 1.0) * self.grid.columns[row]).astype(np.int64)
         numbers = [n for n, group in enumerate(self.plant.groups) for _ in range(group.count)]
         shares = np.zeros((len(numbers), discharge.size))
         for unit in range(len(numbers) - 1, 0, -1):
@@ -428,16 +240,10 @@ class DispatchTable:
                 usable, before[row[:, None], np.clip(rest, 0, before.shape[1] - 1)], -np.inf
             )
             taken = value.argmax(axis=1)
-            shares[unit] = taken / self._unit_steps[numbers[unit], row]
+            shares[unit] = taken / self.grid.unit_steps[numbers[unit], row]
             left = left - taken
-        shares[0] = left / self._unit_steps[numbers[0], row]
+        shares[0] = left / self.grid.unit_steps[numbers[0], row]
         return shares
-
-
-def _apart(heads: list[float]) -> Floats:
-    """Sorted heads without those that coincide with the one before."""
-    nodes = np.unique(heads)
-    return np.asarray(nodes[np.concatenate([[True], np.diff(nodes) > 1e-9 * nodes[-1]])])
 
 
 def max_plus(first: Floats, second: Floats) -> Floats:

@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.hydraulics import HeadState
-from hydroyield.powerhouse.dispatch import DispatchTable, HeadLines
+from hydroyield.powerhouse.dispatch import DispatchTable
+from hydroyield.powerhouse.grid import HeadLines
 from hydroyield.powerhouse.solving import fixed_point
 from hydroyield.powerhouse.units import Plant, UnitGroup
 
@@ -96,7 +97,7 @@ class Dispatcher:
     def fully_open(self, state: HeadState, turbined: Floats) -> Floats:
         """(n,) discharge of all units fully open at the heads of `turbined` [m3/s]."""
         table, used = self._table(self._every_group)
-        return table.full_discharge(self.heads(state, turbined)[used])
+        return table.grid.full_discharge(self.heads(state, turbined)[used])
 
     def discharge_at_capacity(self, state: HeadState, turbined: Floats, running: Ints) -> Floats:
         """(n,) least total at which all running units give their capacity, inf where they cannot.
@@ -170,7 +171,7 @@ class Dispatcher:
             table, used = self._table(int(running))
             own = heads[used][:, chosen]
             units = np.flatnonzero(running >> group_of_unit & 1)
-            full = table.full_discharges(own)[
+            full = table.grid.full_discharges(own)[
                 np.unique(group_of_unit[units], return_inverse=True)[1]
             ]
             found = table.unit_shares(own, turbined[chosen]) * full
@@ -235,4 +236,4 @@ class Dispatcher:
 
 
 def _open_discharge(table: DispatchTable, heads: Floats, _: Floats) -> Floats:
-    return table.full_discharge(heads)
+    return table.grid.full_discharge(heads)

@@ -21,8 +21,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from hydroyield.hydraulics import HeadState
-from hydroyield.powerhouse.dispatch import COLUMNS_PER_UNIT
 from hydroyield.powerhouse.dispatcher import Dispatcher
+from hydroyield.powerhouse.grid import COLUMNS_PER_UNIT
 from hydroyield.powerhouse.solving import fixed_point, last_not_below
 
 Floats = NDArray[np.float64]

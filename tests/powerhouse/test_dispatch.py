@@ -14,7 +14,8 @@ from hypothesis import strategies as st
 from scipy.interpolate import PchipInterpolator
 from scipy.optimize import brentq
 
-from hydroyield.powerhouse.dispatch import COLUMNS, DispatchTable, HeadLines, max_plus
+from hydroyield.powerhouse.dispatch import DispatchTable, max_plus
+from hydroyield.powerhouse.grid import COLUMNS, HeadLines
 from hydroyield.powerhouse.types import machine_types
 from hydroyield.powerhouse.units import EfficiencyCurve, Electrical, Plant, UnitGroup
 
@@ -189,7 +190,7 @@ def test_output_never_falls_with_head(name: str) -> None:
     _, dispatch = tabulated(name, True)
     heads = np.linspace(0.05, HIGHEST, 200)
     for share in (0.5, 0.8, 1.0):
-        output = dispatch.output(heads[None], share * dispatch.full_discharge(heads[None]))
+        output = dispatch.output(heads[None], share * dispatch.grid.full_discharge(heads[None]))
         assert (np.diff(output[np.isfinite(output)]) >= -1e-3 * output.max()).all()
 
 
