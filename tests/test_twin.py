@@ -339,3 +339,39 @@ def test_what_it_does_not_know_it_refuses(tmp_path: Path) -> None:
     siphon = [{"siphon": {"length": 100}}]
     with pytest.raises(ValueError, match="waterway"):
         twin.estimate(write(tmp_path, [4.0] * 365, waterway=siphon))
+
+
+def test_a_key_that_it_does_not_know_is_refused(tmp_path: Path) -> None:
+    preset = [{"rule": "preset", "name": "swiss_q347"}]
+    with pytest.raises(ValueError, match=r"environmental_flow: \['name'\] are not known"):
+        twin.estimate(write(tmp_path, [4.0] * 365, environmental_flow=preset))
+
+
+def test_a_drowned_weir_solves_villemontes_formula() -> None:
+    for unit, behind in ((0.3, 0.2), (1.2, 0.9), (0.05, 0.4)):
+        depth = float(twin.drowned_depth(unit, behind))
+        assert depth**1.5 * (1 - (behind / depth) ** 1.5) ** 0.385 == pytest.approx(unit)
+    assert float(twin.drowned_depth(0.3, -1.0)) == pytest.approx(0.3 ** (2 / 3))
+
+
+def test_a_rating_is_found_again() -> None:
+    levels = np.array([100.4, 100.7, 101.1, 101.8])
+    gaugings = tuple(zip(6.5 * (levels - 99.9) ** 1.7, levels, strict=True))
+    assert twin.fitted_rating(gaugings) == pytest.approx((99.9, 6.5, 1.7), rel=1e-4)
+
+
+def test_a_plant_that_stands_takes_what_it_needs(tmp_path: Path) -> None:
+    """Closed in October: 31 days of 2 + 1 kW; at 2 m3/s the rest of the year less the losses."""
+    chain = {
+        "generator_efficiency": 1.0, "standing_use": 2.0, "transformer_no_load_loss": 1.0,
+        "transformer_load_loss": 5.0,
+    }  # fmt: skip
+    path = write(
+        tmp_path, [2.0] * 365, turbines=[PLAIN_UNIT], electrical=chain, operation={"closed": [10]}
+    )
+    result = twin.estimate(path)
+    power = 9.81 * 2 * 10 * 0.85
+    load = power / result["installed_capacity_kw"]
+    days = 365 - 31
+    expected = 24e-3 * (days * (power - 1 - 5 * load**2) - 31 * 3)
+    assert result["mean_annual_energy_mwh"] == pytest.approx(expected)

@@ -7,8 +7,9 @@ and to read the depth of a channel between 40 000 depths that were bisected once
 
 It reads site files whose quantities are bare numbers in the default units (m, m3/s, kW, km2, degC,
 fractions, `percent` in per cent) and a record `date,discharge` in m3/s with blanks for no value.
-It raises ValueError for what it does not know (siphons, gaugings, duration tables, more than four
-units running together) instead of leaving it out.
+It raises ValueError for what it does not know (duration tables, presets, outages that are placed
+where they cost least, more than four units running together, any key that is not in KEYS) instead
+of leaving it out.
 
 Its own accuracy, measured on the sites of twin_sites.py by halving all steps of the search
 (`fineness=2`): annual energy changes by 2e-6 with three units, by less than 1e-7 with one or two.
@@ -78,7 +79,27 @@ STEPS = [
     "transformer",
     "own_use",
     "export_limit",
+    "imports",
 ]
+# the keys it knows; of those in brackets nothing that it computes depends
+KEYS = {
+    "site": "name latitude altitude water_temperature (source)",
+    "discharge": "record year_start_month minimum_month_coverage transfer inflow_below_intake"
+    " (source)",
+    "head": "headwater tailwater minimum_net_head (source)",
+    "headwater": "level table weir (source)",
+    "weir": "crest length coefficient drowned (source)",
+    "tailwater": "level table rating channel gaugings follows river not_below (source)",
+    "abstractions": "name discharge months counts_as_environmental_flow returns (source)",
+    "environmental_flow": "rule months discharge percent share above maximum_take steps"
+    " (source permit date)",
+    "turbines": "count type rated_discharge rated_head unit_capacity minimum_discharge efficiency"
+    " axis_level jets waterway output_limit starting_discharge (source)",
+    "electrical": "drive_efficiency generator_efficiency transformer_efficiency own_use"
+    " standing_use transformer_no_load_loss transformer_load_loss export_limit (metered_at source)",
+    "operation": "shutdown_above planned_outage forced_outage_rate common_outage_rate standstill"
+    " closed (degradation source)",
+}
 # steps of the first grid for 1, 2, ... running units: total discharge, then openings
 FIRST_GRID = {1: [96], 2: [40, 32], 3: [24, 32, 32], 4: [12, 7, 7, 7]}
 # finer grids: their steps, how many old steps they reach to both sides, how often
@@ -574,13 +595,43 @@ def tailwater_level(tailwater: dict[str, Any], discharge: Any) -> Any:
         return r["zero_level"] + (np.asarray(discharge) / r["coefficient"]) ** (1 / r["exponent"])
     if "channel" in tailwater:
         return tailwater["channel"]["bed_level"] + channel_depth(tailwater["channel"], discharge)
+    if "gaugings" in tailwater:
+        zero, coefficient, exponent = fitted_rating(tuple(map(tuple, tailwater["gaugings"])))
+        return zero + (np.asarray(discharge) / coefficient) ** (1 / exponent)
     raise ValueError(f"tailwater {sorted(tailwater)} is not known")
 
 
+@functools.cache
+def fitted_rating(gaugings: tuple[tuple[float, float], ...]) -> tuple[float, float, float]:
+    """Zero level, coefficient and exponent of Q = C (h - a)^b: least squares of log Q, the zero
+    level by trying many and then more about the best."""
+    discharge, level = np.array(gaugings).T
+    lowest = level.min()
+
+    def fit(drop: float) -> tuple[float, float, float]:
+        x = np.log(level - (lowest - drop))
+        slope, start = np.polyfit(x, np.log(discharge), 1)
+        return float(((np.log(discharge) - start - slope * x) ** 2).sum()), slope, start
+
+    tried = np.geomspace(1e-6, 10 * (level.max() - lowest), 400)
+    for _ in range(12):
+        best = int(np.argmin([fit(drop)[0] for drop in tried]))
+        tried = np.geomspace(tried[max(best - 1, 0)], tried[min(best + 1, tried.size - 1)], 40)
+    _, slope, start = fit(tried[20])
+    return float(lowest - tried[20]), math.exp(start), float(slope)
+
+
 def headwater_level(
-    headwater: dict[str, Any], discharge: float, abstracted: float, total: Any
+    headwater: dict[str, Any],
+    discharge: float,
+    abstracted: float,
+    total: Any,
+    downstream: Any = -np.inf,
 ) -> Any:
-    """Level [m] above the turbines, which turbine `total` [m3/s] of the river's discharge."""
+    """Level [m] above the turbines, which turbine `total` [m3/s] of the river's discharge.
+
+    downstream : tailwater level, which may drown a weir [m]
+    """
     if "level" in headwater:
         return headwater["level"] + 0.0 * np.asarray(total)
     if "table" in headwater:
@@ -588,8 +639,27 @@ def headwater_level(
     if "weir" in headwater:
         weir = headwater["weir"]
         over = np.maximum(discharge - np.asarray(total) - abstracted, 0.0)
-        return weir["crest"] + (over / (weir["coefficient"] * weir["length"])) ** (2 / 3)
+        unit = over / (weir["coefficient"] * weir["length"])
+        if weir.get("drowned"):
+            return weir["crest"] + drowned_depth(unit, downstream - weir["crest"])
+        return weir["crest"] + unit ** (2 / 3)
     raise ValueError(f"headwater {sorted(headwater)} is not known")
+
+
+def drowned_depth(unit: Any, behind: Any) -> Any:
+    """Depth h [m] over a crest with Villemonte's q = h^1.5 (1 - (behind / h)^1.5)^0.385.
+
+    unit : discharge over coefficient and length of the crest
+    behind : depth of the water below the weir over the crest [m], negative below it
+    """
+    unit, behind = np.broadcast_arrays(unit, np.maximum(behind, 0.0))
+    low, high = np.array(behind), behind + unit ** (2 / 3) + 1.0
+    for _ in range(60):
+        depth = (low + high) / 2
+        free = np.maximum(1 - (behind / np.maximum(depth, 1e-12)) ** 1.5, 0.0)
+        enough = depth**1.5 * free**0.385 >= unit
+        low, high = np.where(enough, low, depth), np.where(enough, depth, high)
+    return high
 
 
 BARS = {"rectangular": 2.42, "rounded_upstream": 1.83, "rounded_both": 1.67, "circular": 1.79,
@@ -669,14 +739,12 @@ def heads_of_day(plant: Plant, discharge: float, water: Water) -> HeadsOf:
     The net head is 0 where the state is not admissible.
     """
     head = plant.site["head"]
-    follows_turbine = head["tailwater"].get("follows", "river") == "turbine"
     below = max(0.0, discharge + joining_below(plant, discharge) - water.lost)
-    river_level = None if follows_turbine else float(tailwater_level(head["tailwater"], below))
     lowest = head.get("minimum_net_head", 0.0)
 
     def heads(axis: float | None, total: Any) -> tuple[Any, Any]:
-        upper = headwater_level(head["headwater"], discharge, water.abstracted, total)
-        lower = tailwater_level(head["tailwater"], total) if follows_turbine else river_level
+        lower = level_below(head["tailwater"], below, total)
+        upper = headwater_level(head["headwater"], discharge, water.abstracted, total, lower)
         end = lower if axis is None else axis
         gross = np.maximum(upper - end, 0.0)
         net = gross - waterway_loss(plant, total, water.month)
@@ -688,6 +756,19 @@ def heads_of_day(plant: Plant, discharge: float, water: Water) -> HeadsOf:
     return heads
 
 
+def level_below(tailwater: dict[str, Any], below: float, total: Any) -> Any:
+    """Level [m] below the turbines, of the river or of a tailrace that the river may drown.
+
+    below : discharge of the river at the tailwater [m3/s]
+    total : of the turbines [m3/s]
+    """
+    follows = tailwater.get("follows", "river")
+    level = tailwater_level(tailwater, below if follows == "river" else total)
+    if follows == "higher":
+        level = np.maximum(level, tailwater_level(tailwater["river"], below))
+    return np.maximum(level, tailwater.get("not_below", -np.inf))
+
+
 def reference_head(plant: Plant) -> float:
     """H0 [m]: headwater (of a weir its crest) less tailwater at the median, nothing turbined."""
     head, median = plant.site["head"], plant.exceeded(50)
@@ -695,9 +776,8 @@ def reference_head(plant: Plant) -> float:
         upper = head["headwater"]["weir"]["crest"]
     else:
         upper = float(headwater_level(head["headwater"], median, 0.0, 0.0))
-    turbine = head["tailwater"].get("follows", "river") == "turbine"
     below = median + joining_below(plant, median)
-    return upper - float(tailwater_level(head["tailwater"], 0.0 if turbine else below))
+    return upper - float(level_below(head["tailwater"], below, 0.0))
 
 
 # ---------------------------------------------------------------- units from the site file
@@ -977,10 +1057,19 @@ def heads_without_limit(plant: Plant, heads: HeadsOf, unit: Unit, total: Any) ->
 
 
 def electrical_rows(plant: Plant, output: float, running: bool) -> dict[str, float]:
-    """Transformer, own use and export limit, in this order; what is left is the net power."""
+    """Transformer, own use and export limit, in this order; what is left is the net power.
+
+    A plant that stands takes its standing use and the no-load loss of the transformer.
+    """
     given = plant.site.get("electrical") or {}
-    delivered = output * electrical(plant, "transformer_efficiency")
-    own = min(given.get("own_use", 0.0) * 1000, delivered) if running else 0.0
+    idle = given.get("transformer_no_load_loss", 0.0) * 1000
+    if not running:
+        return {"imports": -idle - given.get("standing_use", 0.0) * 1000}
+    load = output / sum(unit.capacity for unit in plant.units)
+    copper = given.get("transformer_load_loss", 0.0) * 1000 * load**2
+    delivered = output * electrical(plant, "transformer_efficiency") - idle - copper
+    delivered = max(0.0, delivered)
+    own = min(given.get("own_use", 0.0) * 1000, delivered)
     after = delivered - own
     limit = given.get("export_limit")
     above = 0.0 if limit is None else max(0.0, after - limit * 1000)
@@ -994,26 +1083,29 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
     """[(probability, units available)] on a day.
 
     Planned: each unit in turn is out for its days, spread evenly over the months named.
-    Forced: every unit not planned out is down with the same chance, independently.
+    Forced: every unit not planned out is down with the same chance, independently; what they share
+    takes all of them out. In closed months and on days of standstill none is available.
     """
     operation = plant.site.get("operation") or {}
+    if day.month in (operation.get("closed") or []):
+        return [(1.0, ())]
     rate = operation.get("forced_outage_rate", 0.0)
+    common = operation.get("common_outage_rate", 0.0)
     planned = operation.get("planned_outage")
     everyone = tuple(range(len(plant.units)))
     chance = 0.0
     if planned and "dates" in planned:
         chance = share_in_windows(planned["dates"], day) / len(everyone)
-    elif planned and day.month in planned["months"]:
-        year = water_year(plant, day)
-        spread = sum(
-            calendar.monthrange(y, m)[1]
-            for y, m in months_of(plant, year)
-            if m in planned["months"]
-        )
-        chance = planned["days"] / spread
+    elif planned:
+        chance = share_of_spread_days(plant, planned, day)
     if chance * len(everyone) > 1:
         raise ValueError("planned outages do not fit into the months named")
-    stand = share_in_windows((operation.get("standstill") or {}).get("dates") or [], day)
+    standstill = operation.get("standstill") or {"dates": []}
+    if "dates" in standstill:
+        stand = share_in_windows(standstill["dates"], day)
+    else:
+        stand = share_of_spread_days(plant, standstill, day)
+    stand = 1 - (1 - stand) * (1 - common)
     if rate == 0 and chance == 0 and stand == 0:
         return [(1.0, None)]
     cases = [(1 - chance * len(everyone), everyone)]
@@ -1029,6 +1121,17 @@ def availability(plant: Plant, day: datetime.date) -> list[tuple[float, tuple[in
     return result
 
 
+def share_of_spread_days(plant: Plant, stated: dict[str, Any], day: datetime.date) -> float:
+    """The share of a day that falls to days spread evenly over the months named."""
+    if "months" not in stated:
+        raise ValueError("days that are placed where they cost least are not known")
+    if day.month not in stated["months"]:
+        return 0.0
+    months = months_of(plant, water_year(plant, day))
+    named = [calendar.monthrange(y, m)[1] for y, m in months if m in stated["months"]]
+    return float(stated["days"] / sum(named))
+
+
 def share_in_windows(windows: list[str], day: datetime.date) -> float:
     """The share of the days of this day's month that lie in windows "MM-DD to MM-DD"."""
     length = calendar.monthrange(day.year, day.month)[1]
@@ -1036,7 +1139,8 @@ def share_in_windows(windows: list[str], day: datetime.date) -> float:
     for number in range(1, length + 1):
         name = f"{day.month:02d}-{number:02d}"
         for window in windows:
-            first, last = window.split(" to ")
+            first, _, last = window.partition(" to ")
+            last = last or first
             inside = first <= name <= last if first <= last else name >= first or name <= last
             within += inside
     return within / length
@@ -1066,6 +1170,7 @@ def load(path: Path | str, record: Path | str | None = None, fineness: int = 1) 
     """Read a site file and its record (beside it, unless given)."""
     path = Path(path)
     site = yaml.safe_load(path.read_text())
+    refuse_unknown_keys(site)
     file = Path(record) if record else path.parent / site["discharge"]["record"]["file"]
     days = move_to_site(read_record(file), site["discharge"].get("transfer"))
     place = site.get("site") or {}
@@ -1073,6 +1178,22 @@ def load(path: Path | str, record: Path | str | None = None, fineness: int = 1) 
     plant.units = make_units(plant)
     plant.waiting = waiting_days(plant)
     return plant
+
+
+def refuse_unknown_keys(site: dict[str, Any]) -> None:
+    """Stop at any key that would be left out of the calculation."""
+    head = site.get("head") or {}
+    blocks = [(name, site.get(name)) for name in KEYS if name in site]
+    blocks += [(name, head.get(name)) for name in ("headwater", "tailwater")]
+    blocks.append(("weir", head["headwater"].get("weir")))
+    for name, content in blocks:
+        for block in content if isinstance(content, list) else [content or {}]:
+            unknown = set(block) - set(KEYS[name].replace("(", "").replace(")", "").split())
+            if unknown:
+                raise ValueError(f"{name}: {sorted(unknown)} are not known")
+            months = block.get("months", [])
+            if isinstance(months, str) or any(isinstance(month, str) for month in months):
+                raise ValueError(f"{name}: months in words are not known")
 
 
 def missing_months(plant: Plant, year: int) -> list[str]:
@@ -1134,6 +1255,9 @@ def estimate(
                 ledger[step] += energy[step] / len(used)
             kept += [share_water(plant, m, plant.days[d]).kept for d in days_of(plant, y, m)]
     capacity = sum(unit.capacity for unit in plant.units) / 1000
+    given = plant.site.get("electrical") or {}
+    imports = "standing_use" in given or "transformer_no_load_loss" in given
+    steps = STEPS if imports else STEPS[:-1]
     return {
         "installed_capacity_kw": capacity,
         "mean_annual_energy_mwh": sum(yearly.values()) / len(used),
@@ -1156,7 +1280,7 @@ def estimate(
         },
         "environmental_flow_mean_m3s": sum(kept) / len(kept),
         "ledger_mwh": [
-            *({"step": step, "energy_mwh": ledger[step]} for step in STEPS),
+            *({"step": step, "energy_mwh": ledger[step]} for step in steps),
             {"step": "net", "energy_mwh": sum(ledger.values())},
         ],
         "density": plant.density,

@@ -876,6 +876,72 @@ operation:
     return path
 
 
+def stands_at_times(folder: Path) -> Path:
+    """A plant that stands in spells, and then takes power: closed, flushed, off the grid."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Teasel Cut}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: constant, discharge: 0.4}
+head:
+  headwater: {level: 41.0}
+  tailwater: {table: [[0, 37.5], [10, 37.9], [50, 39.2]], not_below: 37.75}
+turbines:
+  - count: 2
+    type: kaplan
+    rated_discharge: 2.2
+    rated_head: 3.1
+electrical:
+  generator_efficiency: 0.94
+  transformer_no_load_loss: 0.6
+  transformer_load_loss: 2.1
+  own_use: 0.8
+  standing_use: 1.5
+operation:
+  closed: [6]
+  standstill: {days: 9, months: [1, 2]}
+  common_outage_rate: 0.015
+  forced_outage_rate: 0.02
+""",
+    )
+    write_record(folder / "flow.csv", 41, "1999-10-01", "2002-09-30", 3.6, 0.9)
+    return path
+
+
+def weir_drowned_by_its_river(folder: Path) -> Path:
+    """A weir that floods drown, and a tailrace of gaugings that the river holds up."""
+    path = write_site(
+        folder,
+        """\
+format: 1
+site: {name: Pillwort Weir}
+discharge:
+  record: {file: flow.csv, unit: m3/s}
+environmental_flow:
+  - {rule: exceedance, percent: 92}
+head:
+  headwater:
+    weir: {crest: 52.1, length: 18, coefficient: 1.8, drowned: true}
+  tailwater:
+    gaugings: [[0.8, 49.55], [2.1, 49.83], [4.4, 50.17], [7.9, 50.52]]
+    follows: higher
+    river: {table: [[0, 49.3], [15, 50.4], [60, 52.6]]}
+turbines:
+  - count: 1
+    type: semi_kaplan
+    rated_discharge: 5.0
+    rated_head: 1.9
+electrical: {generator_efficiency: 0.93, drive_efficiency: 0.97}
+""",
+    )
+    write_record(folder / "flow.csv", 42, "1999-10-01", "2001-09-30", 6.5, 1.0)
+    return path
+
+
 SITES: dict[str, Callable[[Path], Path]] = {
     function.__name__: function
     for function in (
@@ -905,5 +971,7 @@ SITES: dict[str, Callable[[Path], Path]] = {
         penstock_and_rack,
         water_joining_below,
         outages,
+        stands_at_times,
+        weir_drowned_by_its_river,
     )
 }
