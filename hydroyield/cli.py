@@ -255,7 +255,9 @@ def _write_option(site: SiteDescription, number: int, out: Path, *, quiet: bool)
 
     write_folder(out, fill)
     if not quiet:
-        typer.echo(f"Written to {out}; try hydroyield estimate {out / 'site.yaml'} --out results")
+        typer.echo(
+            f"Written to {out}; try hydroyield estimate {out / next(iter(files))} --out results"
+        )
 
 
 def _area(text: str) -> float:

@@ -241,7 +241,8 @@ def option_count(site: SiteDescription) -> int:
 
 
 def write_option(site: SiteDescription, number: int) -> dict[str, bytes]:
-    """The files of a folder in which an option is a site of its own: {name: content}.
+    """The files of a folder in which an option is a site of its own: {name: content}, the site
+    file first.
 
     number : of the option, from 1
 

@@ -19,6 +19,7 @@ import hydroyield
 from hydroyield import jobs
 from hydroyield.errors import RecordError, SiteFileError
 from hydroyield.options.money import Cost, economics
+from hydroyield.report.comparison_words import answer, real_differences
 from hydroyield.site.assembly import read_site
 
 
@@ -252,6 +253,44 @@ def test_without_costs_nothing_speaks_of_money(tmp_path: Path) -> None:
     assert [choice.aim.name for choice in found.choices] == ["largest_energy"]
 
 
+def test_limits_of_the_site_file_are_kept(tmp_path: Path) -> None:
+    """Capacity in kW: 4 m x 9.81 x 0.8 x 0.95 is 29.8 kW for each m3/s, so that 100 kW are 3.35."""
+    options = "unit_counts: [1]\ndesign_discharges: [2, 3, 5, 8]\nmaximum_capacity: 100 kW"
+    found = jobs.compare(read_site(write_site(tmp_path, river(3), options)))
+    assert found.within_limits == (True, True, False, False)
+    (choice,) = found.choices
+    assert choice.option is not None
+    assert choice.option.combination.design_discharge == 3
+    sizing = found.sizings["largest_energy"]
+    assert sizing.best == pytest.approx(100 / (4 * 9.81 * 0.8 * 0.95), rel=2e-3)
+    assert sizing.at_limit
+    assert sizing.high <= 100 / (4 * 9.81 * 0.8 * 0.95) * 1.001
+    assert "of the 2 that keep the limits" in answer(found)
+    assert real_differences(found).startswith("Among the options that keep the limits: option 2")
+
+
+def test_a_wanted_capacity_factor_with_an_option_that_never_runs(tmp_path: Path) -> None:
+    """At 400 m3/s a unit of 100 % minimum stands all year: less than nothing."""
+    options = "unit_counts: [1]\ndesign_discharges: [2, 400]\nwanted_capacity_factor: 25 %"
+    found = jobs.compare(read_site(write_site(tmp_path, river(2), options, minimum="1")))
+    assert found.options[1].mean_annual_energy == 0
+    worth = found.choices[1].aim.worth(found.options[1])
+    capacity = found.options[1].installed_capacity
+    hours = found.options[1].hours_per_year
+    assert worth == pytest.approx(-0.25 * capacity * hours / 1000)
+
+
+def test_two_machines_of_a_type_are_told_apart_by_name(tmp_path: Path) -> None:
+    options = (
+        "unit_counts: [1]\ndesign_discharges: [3]\ntypes: [kaplan, kaplan, "
+        "{type: kaplan, efficiency: [[0.0, 0.801], [1.0, 0.801]]}]"
+    )
+    found = jobs.compare(read_site(write_site(tmp_path, river(2), options)))
+    assert [option.machine for option in found.options] == ["kaplan #1", "kaplan #2"]
+    assert found.differences is not None
+    assert not found.differences.against[0].real
+
+
 # --- what cannot be -------------------------------------------------------------------------------
 
 
@@ -269,6 +308,27 @@ def test_combinations_that_are_no_plants_are_listed(tmp_path: Path) -> None:
         3: "type other has no typical values",
         4: "type other has no typical values",
     }
+
+
+def test_what_is_no_plant_is_not_written(tmp_path: Path) -> None:
+    path = write_site(
+        tmp_path, river(1), "unit_counts: [1]\ndesign_discharges: [2, 6]",
+        more="waterway: [{loss_coefficient: 0.2}]",
+    )  # fmt: skip
+    site = read_site(path)
+    assert "site.yaml" in jobs.write_option(site, 1)
+    with pytest.raises(SiteFileError, match="option 2 is no plant: rated_head cannot be derived"):
+        jobs.write_option(site, 2)
+
+
+def test_an_old_plant_in_site_yaml_is_not_written_over(tmp_path: Path) -> None:
+    options = "unit_counts: [1]\ndesign_discharges: [3]"
+    write_site(tmp_path, river(1), options).rename(tmp_path / "site.yaml")
+    path = write_site(tmp_path, river(1), options, more="baseline: {site: site.yaml}")
+    files = jobs.write_option(read_site(path), 1)
+    assert list(files) == ["option_1.yaml", "daily.csv", "site.yaml"]
+    assert files["site.yaml"] == (tmp_path / "site.yaml").read_bytes()
+    assert b"rated_discharge: 3.0" in files["option_1.yaml"]
 
 
 @pytest.mark.parametrize(

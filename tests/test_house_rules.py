@@ -97,17 +97,18 @@ UNIT_OF_SUFFIX = {
 }  # fmt: skip
 # counts, and what has its unit in the message beside it
 WITHOUT_SUFFIX = {
-    "best_option", "capital_cost", "correlation", "count", "critical_standard_errors", "date",
+    "best_option", "capital_cost", "correlation", "count", "date",
     "days", "days_at_residual_flow", "filled", "first_option", "indistinguishable_options",
     "intercept", "limit", "low_flow_count", "low_flow_start_month", "month", "net_present_value",
     "on_frontier", "option", "rows_read", "rows_used", "second_option", "slope", "unit_count",
+    "within_limits", "price_factor", "capital_factor",
     "value", "year", "year_start_month",
 }  # fmt: skip
 # labels and settings, no quantities: version of the format, seed, counts by a reason in words
 NO_QUANTITY = {"format", "seed", "rows_dropped", "first_lines_dropped", "flags"}
 
 
-TEXT_COLUMNS = {"split", "type", "notes", "reason"}
+TEXT_COLUMNS = {"split", "type", "machine", "notes", "reason"}
 OPTIONS = """
 options: {unit_counts: [1, 2], exceedances: [20, 40]}
 cost: {fixed: 100000, per_kw: 2000, energy_price: 0.12, life: 30, discount_rate: 4 %}

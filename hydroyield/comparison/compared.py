@@ -55,6 +55,7 @@ class PlantComparison:
     other_prices : (factor on prices, factor on capital costs, the best by the aims of money)
     sizings : {name of an aim: the best size of the chosen machine, split and pipe}
     differences : which differences in energy are real; None with a single option
+    within_limits : of each option, whether it may be chosen
     checks : of the record and of the comparison
     """
 
@@ -71,6 +72,7 @@ class PlantComparison:
     other_prices: tuple[tuple[float, float, tuple[Choice, ...]], ...]
     sizings: dict[str, Sizing]
     differences: Differences | None
+    within_limits: tuple[bool, ...]
     checks: tuple[Check, ...]
 
     @property
@@ -106,7 +108,7 @@ def compare_plants(
         raise SiteFileError([_nothing_left(site, refused)])
     wanted = options_of(site)
     found_economics = economics_of(site, options)
-    limits = Limits(wanted.minimum_capacity_factor, wanted.maximum_capacity)
+    limits = _limits(wanted)
     aims = [
         *energy_aims(wanted.wanted_capacity_factor),
         *money_aims(site),
@@ -126,10 +128,16 @@ def compare_plants(
         economics=found_economics,
         choices=choices,
         other_prices=tuple(_other_prices(site, options, limits)),
-        sizings=dict(_sizings(trial, options, choices)),
+        sizings=dict(_sizings(trial, options, choices, limits)),
         differences=_differences(wanted, seasons, options, limits),
+        within_limits=tuple(map(limits.allow, options)),
         checks=tuple(_checks(records[0], options, refused, choices)),
     )
+
+
+def _limits(wanted: Options) -> Limits:
+    most = wanted.maximum_capacity
+    return Limits(wanted.minimum_capacity_factor, None if most is None else most / W_PER_KW)
 
 
 def _nothing_left(site: SiteDescription, refused: Sequence[Refused]) -> Fault:
@@ -206,9 +214,9 @@ AGREES = 1e-3  # share by which a sweep over sizes may differ from options compu
 
 
 def _sizings(
-    trial: Trial, options: Sequence[Option], choices: Sequence[Choice]
+    trial: Trial, options: Sequence[Option], choices: Sequence[Choice], limits: Limits
 ) -> Iterator[tuple[str, Sizing]]:
-    """The best size of what each aim chose, between the sizes listed."""
+    """The best size of what each aim chose, between the sizes listed and within the limits."""
     for choice in choices:
         chosen = choice.option
         if chosen is None:
@@ -217,7 +225,7 @@ def _sizings(
         sizes = sorted(option.combination.design_discharge for option in family)
         if len(sizes) > 1:
             like = _of_size(trial, chosen, family)
-            yield choice.aim.name, best_size(partial(_worth, like, choice.aim), sizes)
+            yield choice.aim.name, best_size(partial(_worth, like, choice.aim, limits), sizes)
 
 
 def _of_size(
@@ -257,11 +265,12 @@ def _sweep(trial: Trial, chosen: Option, family: Sequence[Option]) -> SizeSweep 
     return sweep
 
 
-def _worth(of_size: Callable[[float], Option | None], aim: Aim, size: float) -> float:
-    """What an option of some size is worth; nothing where there is none."""
+def _worth(
+    of_size: Callable[[float], Option | None], aim: Aim, limits: Limits, size: float
+) -> float | None:
+    """What an option of some size is worth; None where there is none that keeps the limits."""
     option = of_size(size)
-    worth = None if option is None else aim.worth(option)
-    return -np.inf if worth is None else worth
+    return None if option is None or not limits.allow(option) else aim.worth(option)
 
 
 def _differences(
@@ -284,6 +293,7 @@ def _differences(
             option.yearly_energy if seasons.years else np.empty(0),
             option.type,
             tuple((size.discharge, size.energy, size.part_load_energy) for size in option.sizes),
+            option.combination.machine,
         )
         for option in allowed
     ]

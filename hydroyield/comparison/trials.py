@@ -38,12 +38,14 @@ class Refused:
     number : 1, 2, ..., counted together with the options
     combination : what it would have been
     type : of the turbines
+    machine : name of the machine, see `Machine`
     reason : why it cannot be
     """
 
     number: int
     combination: Combination
     type: str
+    machine: str
     reason: str
 
 
@@ -79,8 +81,9 @@ class Trial:
             except SiteFileError as error:
                 reason = "; ".join(fault.message for fault in error.faults)
         if reason:
-            return Refused(number, combination, machine.type, reason)
-        return option_of(number, combination, found, tuple(_notes(machine, combination, found)))
+            return Refused(number, combination, machine.type, machine.name, reason)
+        notes = tuple(_notes(machine, combination, found))
+        return option_of(number, combination, machine.name, found, notes)
 
 
 def _notes(machine: Machine, combination: Combination, found: Estimate) -> Iterator[str]:

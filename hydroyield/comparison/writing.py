@@ -5,18 +5,19 @@ from __future__ import annotations
 from collections.abc import Iterator
 from pathlib import Path
 
+from hydroyield.comparison.trials import Refused, Trial
 from hydroyield.errors import SiteFileError
 from hydroyield.site.assembly import read_site
-from hydroyield.site.option_assembly import combinations_of, lacking, machines_to_try, turbines_of
+from hydroyield.site.option_assembly import combinations_of, machines_to_try
 from hydroyield.site.option_writing import site_text_with, turbines_text
 from hydroyield.site.reading import SiteDescription
 from hydroyield.site.river_assembly import RiverAtSite
 
-SITE_FILE = "site.yaml"
+SITE_FILE = "site.yaml"  # unless the file of an old plant is called so
 
 
 def option_files(site: SiteDescription, river: RiverAtSite, number: int) -> dict[str, bytes]:
-    """{name: content} of a folder for one option.
+    """{name: content} of a folder for one option, its site file first.
 
     river : at the site
     number : of the option, from 1
@@ -27,17 +28,18 @@ def option_files(site: SiteDescription, river: RiverAtSite, number: int) -> dict
     if not 1 <= number <= len(tried):
         message = f"there is no option {number}; write one from 1 to {len(tried)}"
         raise SiteFileError([site.fault(("options",), message)])
+    trial = Trial(site, river, tuple(machines_to_try(site)))
     combination = tried[number - 1]
-    machine = machines_to_try(site)[combination.machine]
-    if reason := lacking(machine):
-        message = f"option {number} is no plant: {reason}"
+    if isinstance(found := trial.option(number, combination), Refused):
+        message = f"option {number} is no plant: {found.reason}"
         raise SiteFileError([site.fault(("options",), message)])
-    block = turbines_text(turbines_of(machine, combination))
+    block = turbines_text(trial.turbines(combination))
     text = site_text_with(site.text, block, combination.pipe_diameter)
-    files = {SITE_FILE: text.encode("utf-8")}
-    for path in _files_named(site):
-        files[path.relative_to(site.folder).as_posix()] = path.read_bytes()
-    return files
+    files = {
+        path.relative_to(site.folder).as_posix(): path.read_bytes() for path in _files_named(site)
+    }
+    name = SITE_FILE if SITE_FILE not in files else f"option_{number}.yaml"
+    return {name: text.encode("utf-8"), **files}
 
 
 def _files_named(site: SiteDescription) -> Iterator[Path]:

@@ -17,11 +17,13 @@ from numpy.typing import NDArray
 from hydroyield.river.trends import standard_error_of_mean
 
 Floats = NDArray[np.float64]
+Ints = NDArray[np.intp]
 
-DRAWS, BLOCK = 8000, 1000  # of the simulation; a seed of its own for each block
-CLOSEST = 150  # options whose joint distribution is simulated, by how close they are to the best
+DRAWS, BLOCK = 4000, 500  # of the simulation; a seed of its own for each block
+CLOSEST = 100  # options that are simulated together, by how close they are to the best
 PAIRED = 6  # options with the most energy that are compared each with each
 MANY = 1e9  # degrees of freedom, as good as without end
+LEAST_YEARS, MOST_PERSISTENT = 5, 0.9  # for the autocorrelation and the covariances of differences
 ROUNDING = 1e-9  # share of the energy below which options are the same
 
 
@@ -31,8 +33,8 @@ class MachineError:
 
     shared : of all options alike, as a share of the energy
     type_offset : of all machines of a type
-    size_offset : of the machines of one type and size
-    part_load_tilt : of the efficiency of one type and size at no load, falling to 0 at full opening
+    size_offset : of one machine in one size
+    part_load_tilt : of the efficiency of one machine in one size at no load, 0 at full opening
 
     The defaults are common practice: guarantees of different makers for the same machine differ by
     a few per cent.
@@ -54,6 +56,7 @@ class Candidate:
     type : of its machines
     sizes : (discharge of one unit [m3/s], energy of the units of that size [MWh], the same weighted
         with the share by which they are not fully open [MWh])
+    machine : number of the machine, which tells two of one type apart
     """
 
     name: int
@@ -61,6 +64,7 @@ class Candidate:
     yearly_energy: Floats
     type: str
     sizes: tuple[tuple[float, float, float], ...]
+    machine: int = 0
 
 
 @dataclass(frozen=True)
@@ -72,6 +76,7 @@ class Difference:
     year_error : standard error from the record's years [MWh]; None where they do not tell
     machine_error : standard error from the machines [MWh]
     low, high : interval of this difference by itself [MWh]; unbounded where a year does not tell
+    chance : of a difference as large if there were none, looked at by itself
     real : it is not 0, with all comparisons taken together
     """
 
@@ -82,6 +87,7 @@ class Difference:
     machine_error: float
     low: float
     high: float
+    chance: float
     real: bool
 
     @property
@@ -97,7 +103,7 @@ class Differences:
     best : its number
     years : of the record; 0 where none are known
     confidence : of intervals and of what counts as real
-    critical : standard errors that a difference must exceed to be real, all taken together
+    critical_chance : a difference is real whose own chance is smaller, all taken together
     against : the best less each other, closest first
     pairs : among the options with the most energy
     seed : of the simulation
@@ -106,7 +112,7 @@ class Differences:
     best: int
     years: int
     confidence: float
-    critical: float
+    critical_chance: float
     against: tuple[Difference, ...]
     pairs: tuple[Difference, ...]
     seed: int
@@ -131,10 +137,11 @@ def differences(
 
     A single difference has Student's t distribution with the effective number of years (Welch 1947,
     Biometrika 34: 28-35, Satterthwaite's degrees of freedom, the machines counting as known). As
-    the best of many is compared with all, the bound of all comparisons together is the quantile of
-    the largest studentised difference (Dunnett 1955, J. Am. Stat. Assoc. 50: 1096-1121; Hsu 1981,
-    Ann. Stat. 9: 1026-1034), simulated with the correlations of the paired years and of the shared
-    machines. Raises ValueError for fewer than two candidates.
+    the best of many is found with the same years with which it is compared, the bound for all
+    comparisons together is that of the smallest chance (Westfall & Young 1993, Resampling-Based
+    Multiple Testing) among options that are equally good: simulated with their common weather and
+    machines, the best and every error found anew in each draw. Raises ValueError for fewer than two
+    candidates.
     """
     if len(candidates) < 2:
         raise ValueError("a difference needs two options")
@@ -145,18 +152,19 @@ def differences(
     paired = _Contrasts(
         [(one, other) for place, one in enumerate(near) for other in near[place + 1 :]], error
     )
-    critical = against.closest(CLOSEST).critical(confidence, seed)
+    smallest = _smallest_chances([best, *against.closest(CLOSEST)], error, seed)
+    critical, of_pairs = (float(np.quantile(each, 1 - confidence)) for each in smallest)
     return Differences(
         best=best.name,
         years=int(best.yearly_energy.size),
         confidence=confidence,
-        critical=critical,
+        critical_chance=critical,
         against=tuple(
             sorted(
                 against.found(confidence, critical), key=lambda found: (found.mean, found.second)
             )
         ),
-        pairs=tuple(paired.found(confidence, paired.critical(confidence, seed))),
+        pairs=tuple(paired.found(confidence, of_pairs)),
         seed=seed,
     )
 
@@ -178,53 +186,37 @@ class _Contrasts:
         years = self._yearly.shape[1]
         if years < 2:
             return np.zeros(len(self._pairs)), np.full(len(self._pairs), np.inf)
-        found = [standard_error_of_mean(yearly) for yearly in self._yearly]
+        r = _persistence(self._yearly)
+        found = [standard_error_of_mean(yearly, r) for yearly in self._yearly]
         errors = np.array([each.standard_error for each in found])
         return errors, np.array([each.effective_count for each in found])
 
-    def closest(self, number: int) -> _Contrasts:
-        """The pairs with the smallest difference for their error."""
-        with np.errstate(divide="ignore", invalid="ignore"):
-            apart = np.where(self._total > 0, self._mean / self._total, np.inf)
+    @property
+    def effective_years(self) -> float:
+        """Effective number of years of a difference in the middle."""
+        return float(np.median(self._count))
+
+    def closest(self, number: int) -> list[Candidate]:
+        """The second options of the pairs with the smallest difference for their error."""
+        apart = np.divide(
+            self._mean, self._total, out=np.full(self._mean.size, inf), where=self._total > 0
+        )
         chosen = np.argsort(apart, kind="stable")[:number]
-        return _Contrasts([self._pairs[place] for place in sorted(chosen)], self._error)
-
-    def critical(self, confidence: float, seed: int) -> float:
-        """Quantile of the largest studentised difference if no option were better [1].
-
-        Blocks of draws have seeds of their own, so that the result does not depend on who draws.
-        """
-        uncertain = self._total > 0
-        if not uncertain.any():
-            return 0.0
-        apart = self._yearly
-        if apart.shape[1]:
-            apart = apart - apart.mean(axis=1, keepdims=True)
-        spread = np.sqrt((apart**2).sum(axis=1))
-        scale = np.divide(self._year_error, spread, out=np.zeros_like(spread), where=spread > 0)
-        years = (apart * scale[:, None] / self._total[:, None])[uncertain]
-        machines = (self._machines / self._total[:, None])[uncertain]
-        freedom = float(np.min(self._count)) - 1
-        largest = [
-            _largest(np.random.default_rng(child), years, machines, freedom)
-            for child in np.random.SeedSequence(seed).spawn(DRAWS // BLOCK)
-        ]
-        return float(np.quantile(np.concatenate(largest), confidence))
+        return [self._pairs[place][1] for place in sorted(chosen)]
 
     def found(self, confidence: float, critical: float) -> list[Difference]:
-        """Every pair with its interval, and whether it is real."""
+        """Every pair with its interval, and whether it is real.
+
+        critical : chance below which it is
+        """
         from scipy.special import stdtrit
 
         one_year = self._yearly.shape[1] == 1
-        with np.errstate(divide="ignore", invalid="ignore"):
-            part = np.where(self._total > 0, self._year_error / self._total, 0.0)
-            freedom = np.where(part > 0, (self._count - 1) / part**4, MANY)
-        reach = stdtrit(np.clip(freedom, 1.0, MANY), 0.5 + confidence / 2) * self._total
+        chance, freedom = _chance(self._mean, self._year_error, self._machine_error, self._count)
+        reach = stdtrit(freedom, 0.5 + confidence / 2) * self._total
         reach = np.full(reach.size, inf) if one_year else reach
         energy = max(abs(one.mean_energy) for one, _ in self._pairs)
-        real = (np.abs(self._mean) > critical * self._total) & (
-            np.abs(self._mean) > ROUNDING * energy
-        )
+        real = (chance < critical) & (np.abs(self._mean) > ROUNDING * energy)
         return [
             Difference(
                 first=one.name,
@@ -234,29 +226,146 @@ class _Contrasts:
                 machine_error=float(self._machine_error[place]),
                 low=float(self._mean[place] - reach[place]),
                 high=float(self._mean[place] + reach[place]),
+                chance=1.0 if one_year else float(chance[place]),
                 real=bool(real[place]) and not one_year,
             )
             for place, (one, other) in enumerate(self._pairs)
         ]
 
 
-def _largest(draw: np.random.Generator, years: Floats, machines: Floats, freedom: float) -> Floats:
-    """(BLOCK,) the largest of the studentised differences, by size."""
-    shape = (BLOCK, years.shape[1])
-    weather = np.einsum("dy,ny->dn", draw.standard_normal(shape), years)
-    if years.shape[1] and np.isfinite(freedom):
-        chi = draw.chisquare(max(freedom, 1.0), BLOCK)
-        weather *= np.sqrt(max(freedom, 1.0) / chi)[:, None]
-    guess = draw.standard_normal((BLOCK, machines.shape[1]))
-    return np.asarray(np.abs(weather + np.einsum("dk,nk->dn", guess, machines)).max(axis=1))
+def _persistence(yearly: Floats) -> float:
+    """Autocorrelation of consecutive years of all differences (n, y) together, without its bias.
+
+    A short series looks less persistent than it is, by (1 + 3 r) / y (Kendall 1954, Biometrika 41:
+    403-404); of all of them one number is known better than of each.
+    """
+    apart = yearly - yearly.mean(axis=1, keepdims=True)
+    square = (apart**2).sum(axis=1)
+    moved = square > 0
+    years = yearly.shape[1]
+    if years < LEAST_YEARS or not moved.any():
+        return 0.0
+    consecutive = (apart[:, 1:] * apart[:, :-1]).sum(axis=1)
+    r = float((consecutive[moved] / square[moved]).mean())
+    return float(min((years * r + 1) / (years - 3), MOST_PERSISTENT))
 
 
-def _machine_parts(pairs: Sequence[tuple[Candidate, Candidate]], error: MachineError) -> Floats:
-    """(n, k) by how much each of k independent errors, one deviation large, moves a difference."""
+def _chance(
+    apart: Floats, year_error: Floats, machine_error: Floats, count: Floats | float
+) -> tuple[Floats, Floats]:
+    """Chance of differences as large if there were none, and their degrees of freedom.
+
+    apart, year_error, machine_error : of one shape [MWh]
+    count : effective number of years
+    """
+    from scipy.special import stdtr
+
+    total = np.sqrt(year_error**2 + machine_error**2)
+    known = total > 0
+    part = np.divide(year_error, total, out=np.zeros(total.shape), where=known)
+    steps = np.divide(np.abs(apart), total, out=np.zeros(total.shape), where=known)
+    steps = np.where(known, steps, np.where(apart == 0, 0.0, inf))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        freedom = np.where(part > 0, (np.asarray(count) - 1) / part**4, MANY)
+    freedom = np.clip(freedom, 1.0, MANY)
+    return np.asarray(2 * stdtr(freedom, -steps)), freedom
+
+
+def _smallest_chances(
+    candidates: Sequence[Candidate], error: MachineError, seed: int
+) -> tuple[Floats, Floats]:
+    """(DRAWS,) the smallest chance if all options were equally good, in each draw.
+
+    Of the best against all others, and of the first few pair by pair. Blocks of draws have seeds
+    of their own, so that the result does not depend on who draws.
+    """
+    count = _Contrasts([(candidates[0], other) for other in candidates[1:]], error).effective_years
+    yearly = np.array([each.yearly_energy for each in candidates])
+    years = yearly.shape[1]
+    if years < 2:
+        yearly, count = np.zeros((len(candidates), 1)), 2.0
+    apart = yearly - yearly.mean(axis=1, keepdims=True)
+    apart -= apart.mean(axis=0)  # what all share is in no difference
+    together, alone = _spread(apart / sqrt(max(years - 1, 1)))
+    machines = _machine_parts([(each, None) for each in candidates], error)
+    drawn = [
+        _drawn(np.random.default_rng(child), together, alone, machines, max(2, round(count)))
+        for child in np.random.SeedSequence(seed).spawn(DRAWS // BLOCK)
+    ]
+    against, pairs = zip(*drawn, strict=True)
+    return np.concatenate(against), np.concatenate(pairs)
+
+
+def _spread(apart: Floats) -> tuple[Floats, Floats]:
+    """Deviations that options share, (n, y), and that each has by itself, (n,) [MWh].
+
+    apart : (n, y) yearly energies about their mean, without what all share, over the root of y - 1
+
+    Few years make options look more alike than they are. Their covariances in these years have the
+    weight of Schaefer & Strimmer (2005, Stat. Appl. Genet. Mol. Biol. 4: 32; target D); with very
+    few years each option moves by itself, and all alike.
+    """
+    count, years = apart.shape
+    variance = (apart**2).sum(axis=1)
+    if years < LEAST_YEARS:
+        return np.zeros(apart.shape), np.full(count, sqrt(float(variance.mean())))
+    products = apart[:, None] * apart * (years - 1)
+    doubt = products.var(axis=2) * years**2 / (years - 1) ** 3
+    square = (apart[:, None] * apart).sum(axis=2) ** 2
+    off = ~np.eye(count, dtype=bool)
+    total = float(square[off].sum())
+    alone = min(1.0, float(doubt[off].sum()) / total) if total > 0 else 0.0
+    return sqrt(1 - alone) * apart, np.sqrt(alone * variance)
+
+
+def _drawn(
+    draw: np.random.Generator, together: Floats, alone: Floats, machines: Floats, years: int
+) -> tuple[Floats, Floats]:
+    """(BLOCK,) smallest chance against the best, and pair by pair, of options equally good.
+
+    together, alone : (n, y) and (n,) deviation of options, see `_spread` [MWh]
+    machines : (n, k) what each machine error does [MWh]
+    years : independent ones of a draw
+    """
+    weather = draw.standard_normal((BLOCK, years, together.shape[1]))
+    yearly = np.einsum("dty,ny->dtn", weather, together)
+    yearly += alone * draw.standard_normal(yearly.shape)
+    moved = np.einsum("dk,nk->dn", draw.standard_normal((BLOCK, machines.shape[1])), machines)
+    energy = yearly.mean(axis=1) + moved
+    order = np.argsort(-energy, axis=1, kind="stable")
+    machine_error = np.sqrt(((machines[:, None] - machines) ** 2).sum(axis=2))
+
+    def chance(one: Ints, other: Ints) -> Floats:
+        """(BLOCK, m) of pairs; `one` (BLOCK, 1) and `other` (BLOCK, m) are places of options."""
+        difference = np.take_along_axis(yearly, one[:, None], axis=2) - np.take_along_axis(
+            yearly, other[:, None], axis=2
+        )
+        by_years = difference.std(axis=1, ddof=1) / sqrt(years)
+        by_machines = machine_error[one, other]
+        gap = np.take_along_axis(energy, one, axis=1) - np.take_along_axis(energy, other, axis=1)
+        return _chance(gap, by_years, by_machines, years)[0]
+
+    of_best = chance(order[:, :1], order[:, 1:])
+    pairs = of_best[:, : PAIRED - 1].min(axis=1)
+    for place in range(1, min(PAIRED, order.shape[1]) - 1):
+        later = chance(order[:, place : place + 1], order[:, place + 1 : PAIRED])
+        pairs = np.minimum(pairs, later.min(axis=1))
+    return of_best.min(axis=1), pairs
+
+
+def _machine_parts(
+    pairs: Sequence[tuple[Candidate, Candidate | None]], error: MachineError
+) -> Floats:
+    """(n, k) by how much each of k independent errors, one deviation large, moves a difference.
+
+    pairs : an option less another one, or alone
+    """
     parts: list[dict[object, float]] = []
     for one, other in pairs:
         moved: dict[object, float] = {}
         for candidate, sign in ((one, 1.0), (other, -1.0)):
+            if candidate is None:
+                continue
             for source, effect in _effects(candidate, error):
                 moved[source] = moved.get(source, 0.0) + sign * effect
         parts.append(moved)
@@ -272,7 +381,7 @@ def _effects(candidate: Candidate, error: MachineError) -> list[tuple[object, fl
         (("type", candidate.type), energy * error.type_offset),
     ]
     for discharge, made, part_load in candidate.sizes:
-        size = (candidate.type, round(discharge, 9))
+        size = (candidate.type, candidate.machine, round(discharge, 9))
         effects.append((("offset", *size), made * error.size_offset))
         effects.append((("tilt", *size), part_load * error.part_load_tilt))
     return effects

@@ -36,6 +36,7 @@ class Option:
     number : 1, 2, ...
     combination : what it is
     type : of the turbines
+    machine : name of the machine, the type unless several of that type are tried
     installed_capacity : [kW]
     rated_head : of the largest unit [m]
     energy_by_month : (y, 12) of each year used, January first; a single year with a duration
@@ -50,6 +51,7 @@ class Option:
     number: int
     combination: Combination
     type: str
+    machine: str
     installed_capacity: float
     rated_head: float
     energy_by_month: Floats
@@ -58,6 +60,11 @@ class Option:
     standing_hours: float
     sizes: tuple[UnitSize, ...]
     notes: tuple[str, ...]
+
+    @property
+    def hours_per_year(self) -> float:
+        """Mean length of the years used [h]."""
+        return self.hours / len(self.energy_by_month)
 
     @property
     def mean_annual_energy(self) -> float:
@@ -93,7 +100,11 @@ class Option:
 
 
 def option_of(
-    number: int, combination: Combination, estimate: Estimate, notes: tuple[str, ...]
+    number: int,
+    combination: Combination,
+    machine: str,
+    estimate: Estimate,
+    notes: tuple[str, ...],
 ) -> Option:
     """The numbers of an option, from its estimate."""
     plant, cells, run = estimate.scheme.plant, estimate.cells, estimate.operation
@@ -109,6 +120,7 @@ def option_of(
         number=number,
         combination=combination,
         type=largest.type,
+        machine=machine,
         installed_capacity=estimate.installed_capacity_kw,
         rated_head=largest.rated_head,
         energy_by_month=estimate.energy_by_month / WH_PER_MWH,

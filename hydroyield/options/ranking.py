@@ -123,7 +123,8 @@ def energy_aims(wanted_capacity_factor: float | None) -> list[Aim]:
         wanted = wanted_capacity_factor
 
         def above(option: Option) -> float:
-            return option.mean_annual_energy * (1 - wanted / option.capacity_factor)
+            wanted_energy = wanted * option.installed_capacity * option.hours_per_year
+            return option.mean_annual_energy - wanted_energy * W_PER_KW / WH_PER_MWH
 
         words = (
             "the most energy as long as a further kW reaches a capacity factor of "

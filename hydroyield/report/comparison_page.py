@@ -11,7 +11,6 @@ import numpy as np
 
 import hydroyield
 from hydroyield.comparison.compared import PlantComparison
-from hydroyield.options.differences import in_words
 from hydroyield.options.option import Option
 from hydroyield.report.comparison_tables import (
     MOST_ROWS,
@@ -21,7 +20,13 @@ from hydroyield.report.comparison_tables import (
     page_tables,
     refused,
 )
-from hydroyield.report.comparison_words import answer, choice_rows, option_name, season_rows
+from hydroyield.report.comparison_words import (
+    answer,
+    choice_rows,
+    option_name,
+    real_differences,
+    season_rows,
+)
 from hydroyield.report.drawn import DrawnFigure, rendered
 from hydroyield.report.figures.options import ChosenPower, Family, OptionFacts
 from hydroyield.report.option_tables import comparison_result
@@ -75,13 +80,14 @@ def comparison_page_data(found: PlantComparison, figures: Sequence[DrawnFigure])
         "answer": answer(found),
         "caution": CAUTION,
         "choices": choice_rows(found),
-        "real": "" if found.differences is None else in_words(found.differences),
+        "real": real_differences(found),
         "warnings": [(check.outcome, check.message) for check in found.warnings()],
         "passed": [check.message for check in found.checks if check.outcome == "pass"],
         "other_readings": [],
         "differences": difference_rows(found),
         "figures": figures,
         "tables": page_tables(found),
+        "limited": not all(found.within_limits),
         "more_rows": max(0, len(found.options) - MOST_ROWS),
         "costs": list(cost_rows(found)),
         "notes": notes(found),
@@ -151,7 +157,7 @@ def _families(options: Sequence[Option], marginal: dict[int, float | None]) -> I
         first = rising[0].combination
         known = [marginal[option.number] for option in rising]
         yield Family(
-            type=rising[0].type,
+            type=rising[0].machine,
             split=first.split_text,
             count=first.unit_count,
             pipe="" if first.pipe_diameter is None else f", {first.pipe_diameter:g} m pipe",

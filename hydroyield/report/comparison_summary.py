@@ -6,9 +6,8 @@ from rich.table import Table
 from rich.text import Text
 
 from hydroyield.comparison.compared import PlantComparison
-from hydroyield.options.differences import in_words
 from hydroyield.quantities import rounded
-from hydroyield.report.comparison_words import DIGITS, answer, choice_rows
+from hydroyield.report.comparison_words import DIGITS, answer, choice_rows, marked, real_differences
 from hydroyield.report.result import CAUTION
 from hydroyield.report.summary import checks_found, default_console
 
@@ -24,9 +23,9 @@ def print_comparison(found: PlantComparison) -> None:
     console.print(_best(found))
     console.print()
     console.print(_most_energy(found))
-    if found.differences is not None:
+    if real_differences(found):
         console.print()
-        console.print(Text(in_words(found.differences)))
+        console.print(Text(real_differences(found)))
     console.print()
     for part in checks_found(found.checks):
         console.print(part)
@@ -44,7 +43,8 @@ def _best(found: PlantComparison) -> Table:
 
 
 def _most_energy(found: PlantComparison) -> Table:
-    """The options with the most energy; all where there are few."""
+    """The options with the most energy; all where there are few. Brackets: outside the limits."""
+    within = dict(zip((o.number for o in found.options), found.within_limits, strict=True))
     most = sorted(found.options, key=lambda option: -option.mean_annual_energy)[:MOST_ROWS]
     table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0))
     table.add_column("Option", justify="right")
@@ -54,8 +54,8 @@ def _most_energy(found: PlantComparison) -> Table:
     for option in most:
         mix = option.combination
         table.add_row(
-            str(option.number),
-            mix.units(option.type),
+            marked(option.number, within[option.number]),
+            mix.units(option.machine),
             rounded(mix.design_discharge),
             rounded(option.installed_capacity, DIGITS),
             rounded(option.mean_annual_energy, DIGITS),

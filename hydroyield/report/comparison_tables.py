@@ -9,7 +9,7 @@ from typing import Any
 from hydroyield.comparison.compared import PlantComparison
 from hydroyield.quantities import rounded
 from hydroyield.report import words
-from hydroyield.report.comparison_words import DIGITS
+from hydroyield.report.comparison_words import DIGITS, marked
 from hydroyield.report.option_tables import option_row
 from hydroyield.site.option_assembly import options_of
 
@@ -25,7 +25,7 @@ class PageTable:
 
     title : above it
     columns : headings, without that of the number
-    rows : (number, with an asterisk on the frontier; cells)
+    rows : (number, with an asterisk on the frontier, in brackets outside the limits; cells)
     """
 
     title: str
@@ -36,7 +36,7 @@ class PageTable:
 def page_tables(found: PlantComparison) -> list[PageTable]:
     """The tables of the page; narrow enough to be printed."""
     rows = [
-        option_row(found, index) | {"units": option.combination.units(option.type)}
+        option_row(found, index) | {"units": option.combination.units(option.machine)}
         for index, option in enumerate(found.options[:MOST_ROWS])
     ]
     units: Column = ("Units", lambda row: str(row["units"]))
@@ -51,7 +51,10 @@ def page_tables(found: PlantComparison) -> list[PageTable]:
 
 def _table(title: str, columns: Sequence[Column], rows: Sequence[Row]) -> PageTable:
     cells = [[text(row) for _, text in columns] for row in rows]
-    numbers = [f"{row['option']}{'*' if row['on_frontier'] else ''}" for row in rows]
+    numbers = [
+        marked(row["option"], bool(row["within_limits"])) + ("*" if row["on_frontier"] else "")
+        for row in rows
+    ]
     return PageTable(title, [name for name, _ in columns], list(zip(numbers, cells, strict=True)))
 
 
@@ -158,7 +161,7 @@ def refused(found: PlantComparison) -> list[tuple[str, str]]:
     return _by_reason(
         (
             each.reason,
-            f"{each.number} ({each.combination.units(each.type)}, "
+            f"{each.number} ({each.combination.units(each.machine)}, "
             f"{words.discharge(each.combination.design_discharge)})",
         )
         for each in found.refused

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from hydroyield.comparison.compared import PlantComparison
+from hydroyield.options.differences import in_words
 from hydroyield.options.option import Option
 from hydroyield.options.ranking import Choice
 from hydroyield.quantities import rounded
@@ -18,7 +19,7 @@ def option_name(option: Option) -> str:
     mix = option.combination
     pipe = "" if mix.pipe_diameter is None else f", pipe of {mix.pipe_diameter:g} m"
     size = words.discharge(mix.design_discharge)
-    return f"option {option.number}: {mix.units(option.type)}, {size} together{pipe}"
+    return f"option {option.number}: {mix.units(option.machine)}, {size} together{pipe}"
 
 
 def answer(found: PlantComparison) -> str:
@@ -28,14 +29,34 @@ def answer(found: PlantComparison) -> str:
     total = f"{len(found.options)} options computed{refused}."
     if chosen is None:
         return f"{total} None keeps the limits."
+    kept = sum(found.within_limits)
+    most = "The most energy"
+    if kept < len(found.options):
+        most += (
+            f" of the {kept} that keep the limits" if kept > 1 else ", the only one within limits"
+        )
     close = 0 if found.differences is None else len(found.differences.indistinguishable)
     apart = "another cannot" if close == 1 else f"{close} others cannot"
     return (
-        f"{total} The most energy: {option_name(chosen)}, "
+        f"{total} {most}: {option_name(chosen)}, "
         f"{rounded(chosen.mean_annual_energy, DIGITS)} MWh a year at a capacity factor of "
         f"{words.percent(chosen.capacity_factor)}"
         + (f"; {apart} be told apart from it with the evidence at hand." if close else ".")
     )
+
+
+def marked(number: int, within_limits: bool) -> str:
+    """The number of an option, in brackets where it does not keep the limits."""
+    return str(number) if within_limits else f"({number})"
+
+
+def real_differences(found: PlantComparison) -> str:
+    """Which differences are real, in words; "" where there is nothing to compare."""
+    if found.differences is None:
+        return ""
+    among = "" if all(found.within_limits) else "Among the options that keep the limits: "
+    text = in_words(found.differences)
+    return among + (text[0].lower() + text[1:] if among else text)
 
 
 def choice_rows(found: PlantComparison) -> list[tuple[str, ...]]:
@@ -50,9 +71,11 @@ def _choice(found: PlantComparison, choice: Choice) -> tuple[str, ...]:
     sizing = found.sizings.get(choice.aim.name)
     best = within = "one size only"
     if sizing is not None:
-        best = words.discharge(sizing.best) + (", the end of those listed" if sizing.at_end else "")
-        low = "" if not sizing.low_at_end else " or less"
-        high = "" if not sizing.high_at_end else " or more"
+        best = words.discharge(sizing.best)
+        best += ", the end of those listed" if sizing.at_end else ""
+        best += ", at the limit" if sizing.at_limit else ""
+        low = " or less" if sizing.low_at_end else " (limit)" if sizing.low_at_limit else ""
+        high = " or more" if sizing.high_at_end else " (limit)" if sizing.high_at_limit else ""
         within = f"{words.discharge(sizing.low)}{low} to {words.discharge(sizing.high)}{high}"
     return (
         choice.aim.words,

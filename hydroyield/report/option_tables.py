@@ -12,6 +12,7 @@ import hydroyield
 from hydroyield.comparison.compared import PlantComparison
 from hydroyield.options.differences import Difference, Differences
 from hydroyield.options.option import Option
+from hydroyield.options.ranking import Choice
 from hydroyield.report.record_result import digests
 from hydroyield.report.result import CAUTION, FORMAT
 from hydroyield.river.years import MONTH_NAMES
@@ -31,6 +32,7 @@ def option_row(found: PlantComparison, index: int) -> dict[str, Any]:
     row = _row(found, option)
     row["marginal_energy_kwh_per_kw"] = found.marginal[index]
     row["on_frontier"] = int(found.on_frontier[index])
+    row["within_limits"] = int(found.within_limits[index])
     if found.economics:
         row |= _money(found, index)
     row["notes"] = "; ".join(option.notes)
@@ -53,6 +55,7 @@ def _row(found: PlantComparison, option: Option) -> dict[str, Any]:
         "unit_count": mix.unit_count,
         "split": mix.split_text,
         "type": option.type,
+        "machine": option.machine,
         "unit_discharge_m3s": mix.largest_unit,
         "design_discharge_m3s": mix.design_discharge,
         "pipe_diameter_m": mix.pipe_diameter,
@@ -93,7 +96,7 @@ def refused_table(found: PlantComparison) -> pd.DataFrame:
     """Combinations that are no plants: `option`, what it would have been, and `reason`."""
     import pandas as pd
 
-    columns = ["option", "unit_count", "split", "type", "design_discharge_m3s", "reason"]
+    columns = ["option", "unit_count", "split", "type", "machine", "design_discharge_m3s", "reason"]
     return pd.DataFrame(
         [
             (
@@ -101,6 +104,7 @@ def refused_table(found: PlantComparison) -> pd.DataFrame:
                 each.combination.unit_count,
                 each.combination.split_text,
                 each.type,
+                each.machine,
                 each.combination.design_discharge,
                 each.reason,
             )
@@ -127,10 +131,18 @@ def comparison_result(found: PlantComparison) -> dict[str, Any]:
         "best": [
             {
                 "aim": choice.aim.name,
-                "option": None if choice.option is None else choice.option.number,
+                "option": _number(choice),
                 "sizing": _sizing(found, choice.aim.name),
             }
             for choice in found.choices
+        ],
+        "other_prices": [
+            {
+                "price_factor": price,
+                "capital_factor": capital,
+                "best": [{"aim": choice.aim.name, "option": _number(choice)} for choice in choices],
+            }
+            for price, capital, choices in found.other_prices
         ],
         "differences": None if found.differences is None else _differences(found.differences),
         "checks": [asdict(check) for check in found.checks],
@@ -147,6 +159,10 @@ def comparison_result(found: PlantComparison) -> dict[str, Any]:
     }
 
 
+def _number(choice: Choice) -> int | None:
+    return None if choice.option is None else choice.option.number
+
+
 def _year(found: PlantComparison, index: int) -> str | None:
     return found.seasons.years[index] if found.seasons.years else None
 
@@ -160,6 +176,7 @@ def _sizing(found: PlantComparison, aim: str) -> dict[str, Any] | None:
         "within_one_percent_from_m3s": sizing.low,
         "within_one_percent_to_m3s": sizing.high,
         "at_end": sizing.at_end,
+        "at_limit": sizing.at_limit,
     }
 
 
@@ -167,7 +184,7 @@ def _differences(found: Differences) -> dict[str, Any]:
     return {
         "best_option": found.best,
         "confidence_share": found.confidence,
-        "critical_standard_errors": found.critical,
+        "critical_chance_share": found.critical_chance,
         "indistinguishable_options": list(found.indistinguishable),
         "against_best": [_difference(each) for each in found.against],
         "among_the_largest": [_difference(each) for each in found.pairs],
@@ -184,5 +201,6 @@ def _difference(each: Difference) -> dict[str, Any]:
         "standard_error_mwh": each.standard_error,
         "low_mwh": None if np.isinf(each.low) else each.low,
         "high_mwh": None if np.isinf(each.high) else each.high,
+        "chance_share": each.chance,
         "real": each.real,
     }

@@ -120,10 +120,11 @@ class MeanError:
     autocorrelation: float
 
 
-def standard_error_of_mean(values: ArrayLike) -> MeanError:
+def standard_error_of_mean(values: ArrayLike, persistence: float | None = None) -> MeanError:
     """Standard error of the mean of yearly values that depend on the year before.
 
     values : array_like, (n,) in order of time, of any unit; no nan
+    persistence : autocorrelation of consecutive values, where it is known better than from these
 
     The variance of the mean of a first-order autoregressive series is that of independent values
     times 1 + 2 sum over k of (1 - k / n) r^k (Bayley & Hammersley 1946, Suppl. J. R. Stat. Soc.
@@ -134,7 +135,7 @@ def standard_error_of_mean(values: ArrayLike) -> MeanError:
     n = x.size
     if n < 2:
         raise ValueError("the error of a mean needs two values or more")
-    r = autocorrelation(x)
+    r = autocorrelation(x) if persistence is None else persistence
     k = np.arange(1, n)
     inflation = 1 + 2 * float(((1 - k / n) * max(r, 0.0) ** k).sum())
     error = float(x.std(ddof=1)) * sqrt(inflation / n)

@@ -29,11 +29,13 @@ class Machine:
     """A machine to try, with what the site file knows of it.
 
     type : kaplan, francis, ...
+    name : the type, with a number where several of it are tried
     keys : of a turbine group, without number and size
     pattern : the first turbine group of the type; None where there is none
     """
 
     type: str
+    name: str
     keys: dict[str, Any]
     pattern: TurbineGroup | None
 
@@ -45,7 +47,17 @@ def machines_to_try(site: SiteDescription) -> list[Machine]:
         OptionMachine.model_validate({"type": kind})
         for kind in dict.fromkeys(group.type for group in site.model.turbines)
     )
-    return [_machine(site, entry) for entry in listed]
+    found: list[Machine] = []
+    for machine in (_machine(site, entry) for entry in listed):
+        if machine not in found:  # the same twice is one
+            found.append(machine)
+    kinds = [machine.type for machine in found]
+    return [
+        machine
+        if kinds.count(machine.type) == 1
+        else replace(machine, name=f"{machine.type} #{kinds[: place + 1].count(machine.type)}")
+        for place, machine in enumerate(found)
+    ]
 
 
 def options_of(site: SiteDescription) -> Options:
@@ -70,7 +82,7 @@ def _machine(site: SiteDescription, wanted: OptionMachine) -> Machine:
     for key in ("waterway", "output_limit"):
         if pattern is not None and getattr(pattern, key):
             keys[key] = getattr(pattern, key)
-    return Machine(wanted.type, keys, pattern)
+    return Machine(wanted.type, wanted.type, keys, pattern)
 
 
 def lacking(machine: Machine) -> str:

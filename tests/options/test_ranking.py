@@ -27,6 +27,7 @@ def option(number: int, capacity: float, energy: float, units: int = 1) -> Optio
         number=number,
         combination=Combination(0, (1 / units,) * units, capacity / 10),
         type="kaplan",
+        machine="kaplan",
         installed_capacity=capacity,
         rated_head=3.0,
         energy_by_month=np.full((1, 12), energy / 12),
