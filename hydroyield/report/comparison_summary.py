@@ -23,6 +23,8 @@ def print_comparison(found: PlantComparison) -> None:
     console.print(_best(found))
     console.print()
     console.print(_most_energy(found))
+    if not all(found.within_limits):
+        console.print(Text("Options in brackets do not keep the limits."))
     if real_differences(found):
         console.print()
         console.print(Text(real_differences(found)))
