@@ -244,6 +244,7 @@ def lengthened(folder: Path) -> Path:
     return site(folder, "{record: {file: short.csv}, reference: {file: long.csv}}")
 
 
+@pytest.mark.slow
 def test_a_reference_lengthens_the_record_and_what_it_filled_is_marked(tmp_path: Path) -> None:
     path = lengthened(tmp_path)
     out = tmp_path / "out"

@@ -150,6 +150,11 @@ def slow(case: Any) -> Any:
     return pytest.param(case, marks=pytest.mark.slow)
 
 
+some_figures = pytest.mark.parametrize(  # the others with the slow tests
+    "spec", [*FIGURES[:4], *map(slow, FIGURES[4:])], ids=lambda spec: spec.name
+)
+
+
 @cache
 def demo() -> Facts:
     return Facts(hydroyield.estimate(hydroyield.read_site(DEMO)))
@@ -510,7 +515,7 @@ def assert_texts_can_be_read(spec: FigureSpec, facts: Facts) -> str:
     return recorder.drawing.getvalue()
 
 
-@figures
+@some_figures
 def test_texts_of_the_demo_can_be_read(spec: FigureSpec, facts: Facts) -> None:
     assert_texts_can_be_read(spec, facts)
 
@@ -584,11 +589,7 @@ def test_files_are_written_and_repeat_to_the_byte(tmp_path: Path, facts: Facts) 
         assert (tmp_path / f"{spec.name}.svg").read_bytes() == demo_svg(spec).encode()
 
 
-@pytest.mark.parametrize(
-    "spec",
-    [*FIGURES[:4], *map(slow, FIGURES[4:])],
-    ids=lambda spec: spec.name,
-)
+@some_figures
 def test_the_svg_is_vector_text_on_light_paper(spec: FigureSpec, facts: Facts) -> None:
     svg = demo_svg(spec)
     root = ElementTree.fromstring(svg)

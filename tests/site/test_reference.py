@@ -9,6 +9,7 @@ from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any, get_args
 
+import pytest
 from pydantic import ValidationError
 from pydantic.fields import FieldInfo
 
@@ -44,6 +45,7 @@ def test_the_committed_page_is_current() -> None:
     assert current, f"site_configs/REFERENCE.md is out of date; run: {COMMAND}"
 
 
+@pytest.mark.slow
 def test_the_command_prints_the_page() -> None:
     done = subprocess.run(
         [sys.executable, "-X", "utf8", "-m", "hydroyield.site.reference"],
