@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from hydroyield.energy.starting import waiting_days
 from hydroyield.hydraulics import Heads, HeadState
 from hydroyield.powerhouse import Dispatcher, HeadLines, Operation, Outages, Plant, operate
-from hydroyield.river import Calendar, WaterRules, quantile
+from hydroyield.river import Calendar, WaterRules, distinct_states, quantile
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -107,10 +107,9 @@ class Scheme:
             return None
         month = Calendar.of(self.dates, self.year_start_month).month
         known = ~np.isnan(self.discharge) & ~np.isin(month, self.outages.closed)
-        distinct, rank = np.unique(self.discharge[known], return_inverse=True)
-        season = self.rules.season_of_month[month[known] - 1]
-        pairs, place = np.unique(season * distinct.size + rank, return_inverse=True)
-        river, season = distinct[pairs % distinct.size], pairs // distinct.size
+        river, season, place = distinct_states(
+            self.discharge[known], self.rules.season_of_month[month[known] - 1]
+        )
         run = self.operate(river, season)
         reach = np.minimum(run.offered, run.fully_open)
         state = self.head_state(river, season)

@@ -12,7 +12,7 @@ from hydroyield.energy import Estimate
 from hydroyield.quantities import WH_PER_MWH
 from hydroyield.record import Record
 from hydroyield.record.daily import trapezoid_means
-from hydroyield.river import Calendar
+from hydroyield.river import Calendar, distinct_states
 from hydroyield.river.duration import DAYS_PER_YEAR
 
 Floats = NDArray[np.float64]
@@ -82,8 +82,8 @@ def _power(energy: Estimate, discharge: Floats, month: NDArray[np.int64]) -> Flo
     season = scheme.rules.season_of_month[month[valid] - 1]
     distinct, rank = np.unique(discharge[valid], return_inverse=True)
     thin = max(1, -(-distinct.size * scheme.rules.season_count // MOST_DISCHARGES))
-    pairs, place = np.unique(season * distinct.size + rank // thin * thin, return_inverse=True)
-    run = scheme.operate(distinct[pairs % distinct.size], pairs // distinct.size)
+    river, season, place = distinct_states(distinct[rank // thin * thin], season)
+    run = scheme.operate(river, season)
     power[valid] = scheme.net_power(run.output)[place]
     return power
 

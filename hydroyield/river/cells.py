@@ -85,6 +85,19 @@ class Cells:
         return totals.reshape(self.hours.shape) * (self.hours / self.valid_days)
 
 
+def distinct_states(discharge: Floats, season: Ints) -> tuple[Floats, Ints, Ints]:
+    """Distinct pairs of season and discharge.
+
+    discharge, season : of days, both (n,); discharge in [m3/s], no nan
+
+    Returns discharge and season of the pairs, both (c,), by season and then rising, and the pair of
+    each day (n,).
+    """
+    distinct, rank = np.unique(discharge, return_inverse=True)
+    pairs, place = np.unique(season * distinct.size + rank, return_inverse=True)
+    return distinct[pairs % distinct.size], pairs // distinct.size, place
+
+
 def condense(
     discharge: Floats,
     calendar: Calendar,
@@ -106,19 +119,17 @@ def condense(
     row = calendar.year - months.years[0]
     chosen = used[row] & ~np.isnan(discharge)
     month = calendar.month[chosen]
-    distinct, rank = np.unique(discharge[chosen], return_inverse=True)
-    waits = np.zeros(rank.size, np.int64) if waiting is None else waiting[chosen].astype(np.int64)
-    triples, cell_of_day = np.unique(
-        2 * (season_of_month[month - 1] * distinct.size + rank) + waits, return_inverse=True
+    waits = np.zeros(month.size, np.int64) if waiting is None else waiting[chosen].astype(np.int64)
+    river, state, cell_of_day = distinct_states(
+        discharge[chosen], 2 * season_of_month[month - 1] + waits
     )
-    pairs = triples // 2
     return Cells(
-        discharge=distinct[pairs % distinct.size],
-        season=pairs // distinct.size,
+        discharge=river,
+        season=state // 2,
         cell_of_day=cell_of_day,
         month_of_day=12 * new_row[row[chosen]] + month - 1,
         years=months.years[used],
         hours=months.hours[used],
         valid_days=months.valid[used],
-        waiting=None if waiting is None else triples % 2 == 1,
+        waiting=None if waiting is None else state % 2 == 1,
     )
