@@ -9,21 +9,19 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import combinations
 from math import inf, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
 
+from hydroyield.options.simultaneous import LEAST_YEARS, PAIRED, chance_of, smallest_chances
 from hydroyield.river.trends import standard_error_of_mean
 
 Floats = NDArray[np.float64]
-Ints = NDArray[np.intp]
 
-DRAWS, BLOCK = 4000, 500  # of the simulation; a seed of its own for each block
 CLOSEST = 100  # options that are simulated together, by how close they are to the best
-PAIRED = 6  # options with the most energy that are compared each with each
-MANY = 1e9  # degrees of freedom, as good as without end
-LEAST_YEARS, MOST_PERSISTENT = 5, 0.9  # for the autocorrelation and the covariances of differences
+MOST_PERSISTENT = 0.9  # autocorrelation of differences
 ROUNDING = 1e-9  # share of the energy below which options are the same
 
 
@@ -146,13 +144,16 @@ def differences(
     if len(candidates) < 2:
         raise ValueError("a difference needs two options")
     ranked = sorted(candidates, key=lambda candidate: (-candidate.mean_energy, candidate.name))
-    best, others = ranked[0], ranked[1:]
-    against = _Contrasts([(best, other) for other in others], error)
-    near = ranked[:PAIRED]
-    paired = _Contrasts(
-        [(one, other) for place, one in enumerate(near) for other in near[place + 1 :]], error
+    best, near = ranked[0], ranked[:PAIRED]
+    against = _against_first(ranked, error)
+    paired = _Contrasts(near, list(combinations(range(len(near)), 2)), error)
+    close = [best, *against.closest(CLOSEST)]
+    smallest = smallest_chances(
+        np.array([candidate.yearly_energy for candidate in close]),
+        _machine_effects(close, error),
+        _against_first(close, error).effective_years,
+        seed,
     )
-    smallest = _smallest_chances([best, *against.closest(CLOSEST)], error, seed)
     critical, of_pairs = (float(np.quantile(each, 1 - confidence)) for each in smallest)
     return Differences(
         best=best.name,
@@ -169,15 +170,31 @@ def differences(
     )
 
 
-class _Contrasts:
-    """Pairs of options, the first with more energy than the second."""
+def _against_first(candidates: Sequence[Candidate], error: MachineError) -> _Contrasts:
+    """The first candidate with each other one."""
+    return _Contrasts(candidates, [(0, place) for place in range(1, len(candidates))], error)
 
-    def __init__(self, pairs: Sequence[tuple[Candidate, Candidate]], error: MachineError) -> None:
-        self._pairs, self._error = pairs, error
-        self._mean = np.array([one.mean_energy - other.mean_energy for one, other in pairs])
-        self._yearly = np.array([one.yearly_energy - other.yearly_energy for one, other in pairs])
-        self._machines = _machine_parts(pairs, error)
-        self._machine_error = np.sqrt((self._machines**2).sum(axis=1))
+
+class _Contrasts:
+    """Pairs of options, the first with more energy than the second.
+
+    places : of the two of each pair among the candidates
+    """
+
+    def __init__(
+        self,
+        candidates: Sequence[Candidate],
+        places: Sequence[tuple[int, int]],
+        error: MachineError,
+    ) -> None:
+        self._pairs = [(candidates[first], candidates[second]) for first, second in places]
+        self._mean = np.array([one.mean_energy - other.mean_energy for one, other in self._pairs])
+        self._yearly = np.array(
+            [one.yearly_energy - other.yearly_energy for one, other in self._pairs]
+        )
+        effects = _machine_effects(candidates, error)
+        first, second = np.array(places).T
+        self._machine_error = np.sqrt(((effects[first] - effects[second]) ** 2).sum(axis=1))
         self._year_error, self._count = self._years()
         self._total = np.sqrt(self._year_error**2 + self._machine_error**2)
 
@@ -212,7 +229,7 @@ class _Contrasts:
         from scipy.special import stdtrit
 
         one_year = self._yearly.shape[1] == 1
-        chance, freedom = _chance(self._mean, self._year_error, self._machine_error, self._count)
+        chance, freedom = chance_of(self._mean, self._year_error, self._machine_error, self._count)
         reach = stdtrit(freedom, 0.5 + confidence / 2) * self._total
         reach = np.full(reach.size, inf) if one_year else reach
         energy = max(abs(one.mean_energy) for one, _ in self._pairs)
@@ -250,140 +267,27 @@ def _persistence(yearly: Floats) -> float:
     return float(min((years * r + 1) / (years - 3), MOST_PERSISTENT))
 
 
-def _chance(
-    apart: Floats, year_error: Floats, machine_error: Floats, count: Floats | float
-) -> tuple[Floats, Floats]:
-    """Chance of differences as large if there were none, and their degrees of freedom.
-
-    apart, year_error, machine_error : of one shape [MWh]
-    count : effective number of years
-    """
-    from scipy.special import stdtr
-
-    total = np.sqrt(year_error**2 + machine_error**2)
-    known = total > 0
-    part = np.divide(year_error, total, out=np.zeros(total.shape), where=known)
-    steps = np.divide(np.abs(apart), total, out=np.zeros(total.shape), where=known)
-    steps = np.where(known, steps, np.where(apart == 0, 0.0, inf))
-    with np.errstate(divide="ignore", invalid="ignore"):
-        freedom = np.where(part > 0, (np.asarray(count) - 1) / part**4, MANY)
-    freedom = np.clip(freedom, 1.0, MANY)
-    return np.asarray(2 * stdtr(freedom, -steps)), freedom
+def _machine_effects(candidates: Sequence[Candidate], error: MachineError) -> Floats:
+    """(n, k) what each of k independent errors, one deviation large, does to an option [MWh]."""
+    effects = [_effects(candidate, error) for candidate in candidates]
+    sources = list(dict.fromkeys(source for moved in effects for source in moved))
+    return np.array([[moved.get(source, 0.0) for source in sources] for moved in effects])
 
 
-def _smallest_chances(
-    candidates: Sequence[Candidate], error: MachineError, seed: int
-) -> tuple[Floats, Floats]:
-    """(DRAWS,) the smallest chance if all options were equally good, in each draw.
-
-    Of the best against all others, and of the first few pair by pair. Blocks of draws have seeds
-    of their own, so that the result does not depend on who draws.
-    """
-    count = _Contrasts([(candidates[0], other) for other in candidates[1:]], error).effective_years
-    yearly = np.array([each.yearly_energy for each in candidates])
-    years = yearly.shape[1]
-    if years < 2:
-        yearly, count = np.zeros((len(candidates), 1)), 2.0
-    apart = yearly - yearly.mean(axis=1, keepdims=True)
-    apart -= apart.mean(axis=0)  # what all share is in no difference
-    together, alone = _spread(apart / sqrt(max(years - 1, 1)))
-    machines = _machine_parts([(each, None) for each in candidates], error)
-    drawn = [
-        _drawn(np.random.default_rng(child), together, alone, machines, max(2, round(count)))
-        for child in np.random.SeedSequence(seed).spawn(DRAWS // BLOCK)
-    ]
-    against, pairs = zip(*drawn, strict=True)
-    return np.concatenate(against), np.concatenate(pairs)
-
-
-def _spread(apart: Floats) -> tuple[Floats, Floats]:
-    """Deviations that options share, (n, y), and that each has by itself, (n,) [MWh].
-
-    apart : (n, y) yearly energies about their mean, without what all share, over the root of y - 1
-
-    Few years make options look more alike than they are. Their covariances in these years have the
-    weight of Schaefer & Strimmer (2005, Stat. Appl. Genet. Mol. Biol. 4: 32; target D); with very
-    few years each option moves by itself, and all alike.
-    """
-    count, years = apart.shape
-    variance = (apart**2).sum(axis=1)
-    if years < LEAST_YEARS:
-        return np.zeros(apart.shape), np.full(count, sqrt(float(variance.mean())))
-    products = apart[:, None] * apart * (years - 1)
-    doubt = products.var(axis=2) * years**2 / (years - 1) ** 3
-    square = (apart[:, None] * apart).sum(axis=2) ** 2
-    off = ~np.eye(count, dtype=bool)
-    total = float(square[off].sum())
-    alone = min(1.0, float(doubt[off].sum()) / total) if total > 0 else 0.0
-    return sqrt(1 - alone) * apart, np.sqrt(alone * variance)
-
-
-def _drawn(
-    draw: np.random.Generator, together: Floats, alone: Floats, machines: Floats, years: int
-) -> tuple[Floats, Floats]:
-    """(BLOCK,) smallest chance against the best, and pair by pair, of options equally good.
-
-    together, alone : (n, y) and (n,) deviation of options, see `_spread` [MWh]
-    machines : (n, k) what each machine error does [MWh]
-    years : independent ones of a draw
-    """
-    weather = draw.standard_normal((BLOCK, years, together.shape[1]))
-    yearly = np.einsum("dty,ny->dtn", weather, together)
-    yearly += alone * draw.standard_normal(yearly.shape)
-    moved = np.einsum("dk,nk->dn", draw.standard_normal((BLOCK, machines.shape[1])), machines)
-    energy = yearly.mean(axis=1) + moved
-    order = np.argsort(-energy, axis=1, kind="stable")
-    machine_error = np.sqrt(((machines[:, None] - machines) ** 2).sum(axis=2))
-
-    def chance(one: Ints, other: Ints) -> Floats:
-        """(BLOCK, m) of pairs; `one` (BLOCK, 1) and `other` (BLOCK, m) are places of options."""
-        difference = np.take_along_axis(yearly, one[:, None], axis=2) - np.take_along_axis(
-            yearly, other[:, None], axis=2
-        )
-        by_years = difference.std(axis=1, ddof=1) / sqrt(years)
-        by_machines = machine_error[one, other]
-        gap = np.take_along_axis(energy, one, axis=1) - np.take_along_axis(energy, other, axis=1)
-        return _chance(gap, by_years, by_machines, years)[0]
-
-    of_best = chance(order[:, :1], order[:, 1:])
-    pairs = of_best[:, : PAIRED - 1].min(axis=1)
-    for place in range(1, min(PAIRED, order.shape[1]) - 1):
-        later = chance(order[:, place : place + 1], order[:, place + 1 : PAIRED])
-        pairs = np.minimum(pairs, later.min(axis=1))
-    return of_best.min(axis=1), pairs
-
-
-def _machine_parts(
-    pairs: Sequence[tuple[Candidate, Candidate | None]], error: MachineError
-) -> Floats:
-    """(n, k) by how much each of k independent errors, one deviation large, moves a difference.
-
-    pairs : an option less another one, or alone
-    """
-    parts: list[dict[object, float]] = []
-    for one, other in pairs:
-        moved: dict[object, float] = {}
-        for candidate, sign in ((one, 1.0), (other, -1.0)):
-            if candidate is None:
-                continue
-            for source, effect in _effects(candidate, error):
-                moved[source] = moved.get(source, 0.0) + sign * effect
-        parts.append(moved)
-    sources = list(dict.fromkeys(source for moved in parts for source in moved))
-    return np.array([[moved.get(source, 0.0) for source in sources] for moved in parts])
-
-
-def _effects(candidate: Candidate, error: MachineError) -> list[tuple[object, float]]:
-    """What each error, one deviation large, does to the energy of an option [MWh]."""
+def _effects(candidate: Candidate, error: MachineError) -> dict[object, float]:
+    """{error: what it does, one deviation large, to the energy of an option [MWh]}."""
     energy = candidate.mean_energy
-    effects: list[tuple[object, float]] = [
-        ("shared", energy * error.shared),
-        (("type", candidate.type), energy * error.type_offset),
-    ]
+    effects: dict[object, float] = {
+        "shared": energy * error.shared,
+        ("type", candidate.type): energy * error.type_offset,
+    }
     for discharge, made, part_load in candidate.sizes:
         size = (candidate.type, candidate.machine, round(discharge, 9))
-        effects.append((("offset", *size), made * error.size_offset))
-        effects.append((("tilt", *size), part_load * error.part_load_tilt))
+        for name, moved in (
+            ("offset", made * error.size_offset),
+            ("tilt", part_load * error.part_load_tilt),
+        ):
+            effects[name, *size] = effects.get((name, *size), 0.0) + moved
     return effects
 
 

@@ -60,10 +60,8 @@ def best_size(worth: Worth, sizes: Sequence[float]) -> Sizing:
     if not listed:
         raise ValueError("no size has a worth")
     top = max(listed, key=listed.__getitem__)
-    below, above = (
-        _reach(of, top, [size for size in outward if (size - top) * sign > 0])
-        for outward, sign in ((sizes[::-1], -1), (sizes, 1))
-    )
+    below = _reach(of, top, [size for size in reversed(sizes) if size < top])
+    above = _reach(of, top, [size for size in sizes if size > top])
     low, high = (path[1] if len(path) > 1 else top for path in (below.sizes, above.sizes))
     best = top
     if low < high:

@@ -25,9 +25,9 @@ def print_comparison(found: PlantComparison) -> None:
     console.print(_most_energy(found))
     if not all(found.within_limits):
         console.print(Text("Options in brackets do not keep the limits."))
-    if real_differences(found):
+    if differences := real_differences(found):
         console.print()
-        console.print(Text(real_differences(found)))
+        console.print(Text(differences))
     console.print()
     for part in checks_found(found.checks):
         console.print(part)
@@ -46,17 +46,17 @@ def _best(found: PlantComparison) -> Table:
 
 def _most_energy(found: PlantComparison) -> Table:
     """The options with the most energy; all where there are few. Brackets: outside the limits."""
-    within = dict(zip((o.number for o in found.options), found.within_limits, strict=True))
-    most = sorted(found.options, key=lambda option: -option.mean_annual_energy)[:MOST_ROWS]
+    options = zip(found.options, found.within_limits, strict=True)
+    most = sorted(options, key=lambda pair: -pair[0].mean_annual_energy)[:MOST_ROWS]
     table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0))
     table.add_column("Option", justify="right")
     table.add_column("Units")
     for name in ("m3/s", "kW", "MWh a year", "Factor"):
         table.add_column(name, justify="right")
-    for option in most:
+    for option, within_limits in most:
         mix = option.combination
         table.add_row(
-            marked(option.number, within[option.number]),
+            marked(option.number, within_limits),
             mix.units(option.machine),
             rounded(mix.design_discharge),
             rounded(option.installed_capacity, DIGITS),

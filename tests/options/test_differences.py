@@ -219,7 +219,7 @@ def test_equal_options_are_seldom_told_apart(
 
     Of 400 simulated records; 3 standard deviations of a share of 5 % are 3.3 %.
     """
-    monkeypatch.setattr("hydroyield.options.differences.DRAWS", 1000)
+    monkeypatch.setattr("hydroyield.options.simultaneous.DRAWS", 1000)
     alarms = 0
     for seed in range(400):
         draw = np.random.default_rng(seed)
