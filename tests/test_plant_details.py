@@ -23,7 +23,7 @@ from hydroyield.report.page import page
 from hydroyield.report.result import result
 from hydroyield.report.understood import understood
 from hydroyield.site.notes import filled_in
-from hydroyield.site.plant_models import Standstill
+from hydroyield.site.operation_models import Standstill
 
 PCHIP = PchipInterpolator([0.1, 0.5, 1], [0.8, 0.9, 0.85])  # of UNIT
 

@@ -22,7 +22,8 @@ from hydroyield.site.baseline_models import Baseline
 from hydroyield.site.discharge_models import Discharge, InflowBelowIntake, Transfer
 from hydroyield.site.head_models import Channel, Head, Headwater, Rating, Tailwater, Weir
 from hydroyield.site.models import Site, SiteFile
-from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
+from hydroyield.site.operation_models import Operation
+from hydroyield.site.plant_models import Electrical, TurbineGroup
 from hydroyield.site.record_models import Record, Reference
 from hydroyield.site.river_models import RULES, Abstraction
 from hydroyield.site.waterway_models import Canal, Exit, Pipe, TrashRack, WaterwayLoss

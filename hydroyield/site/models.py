@@ -20,8 +20,9 @@ from hydroyield.site.discharge_models import Discharge
 from hydroyield.site.faults import Finding, flow, shown
 from hydroyield.site.fields import Choice, ListOf, Quantity, Text, scalar_text
 from hydroyield.site.head_models import Head
+from hydroyield.site.operation_models import Operation
 from hydroyield.site.option_models import Cost, Options
-from hydroyield.site.plant_models import Electrical, Operation, TurbineGroup
+from hydroyield.site.plant_models import Electrical, TurbineGroup
 from hydroyield.site.river_models import Abstraction, Combination, ConstantRule, Rule
 from hydroyield.site.waterway_models import WaterwayLoss
 

@@ -6,7 +6,7 @@ from hydroyield.errors import SiteFileError
 from hydroyield.powerhouse import Dated, Outages, Spread
 from hydroyield.powerhouse.outages import SHORTEST
 from hydroyield.site.faults import KeyPath
-from hydroyield.site.plant_models import PlannedOutage, Standstill
+from hydroyield.site.operation_models import PlannedOutage, Standstill
 from hydroyield.site.reading import SiteDescription
 
 EVERY_MONTH = tuple(range(1, 13))
