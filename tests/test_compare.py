@@ -114,6 +114,16 @@ def test_limits_by_head_and_starts_move_with_the_size_of_the_unit(tmp_path: Path
     assert group.most_output(np.array([3.0, 4.0])) == pytest.approx([30e3, 50e3])
 
 
+def test_jets_may_start_at_less_than_the_minimum_of_one(tmp_path: Path) -> None:
+    """Two jets run down to half of the 10 % of a single one, as under turbines."""
+    options = (
+        "unit_counts: [1]\ndesign_discharges: [3]\n"
+        "types: [{type: pelton, jets: 2, axis_level: 100.5, starting_discharge: 7 %}]"
+    )
+    found = jobs.compare(read_site(write_site(tmp_path, river(1), options)))
+    assert [option.type for option in found.options] == ["pelton"]
+
+
 def test_a_limit_of_unknown_size_and_a_start_below_the_minimum_are_refused(tmp_path: Path) -> None:
     options = (
         "unit_counts: [1]\ntypes: [{type: kaplan, minimum_discharge: 30 %}]\nexceedances: [30]"

@@ -86,7 +86,7 @@ def read_site(path: str | Path) -> SiteDescription:
             site, number, group.unit_capacity, group.rated_discharge, group.rated_head,
             specific_weight,
         )  # fmt: skip
-        faults += starting_fault(site, number, group.starting_discharge, minimum_share(group))
+        faults += starting_fault(site, number, group.starting_discharge, _minimum_of(group))
     if faults:
         raise SiteFileError(sorted(faults, key=lambda fault: fault.line or 0))
     return site
@@ -319,11 +319,18 @@ def _output_limit(group: TurbineGroup) -> OutputLimit | None:
     return OutputLimit(heads, powers)
 
 
-def minimum_share(group: TurbineGroup) -> float:
-    """The minimum discharge given, or that of the type, as a share of full discharge."""
-    if group.minimum_discharge is None:
-        return machine_types()[group.type].minimum_discharge / (group.jets or 1)
-    return group.minimum_discharge
+def minimum_share(kind: str, given: float | None, jets: int | None) -> float:
+    """The minimum discharge given, or that of the type, as a share of full discharge.
+
+    kind : type of the turbine, with typical values where none is given
+    """
+    if given is None:
+        return machine_types()[kind].minimum_discharge / (jets or 1)
+    return given
+
+
+def _minimum_of(group: TurbineGroup) -> float:
+    return minimum_share(group.type, group.minimum_discharge, group.jets)
 
 
 def _plant(
@@ -339,7 +346,7 @@ def _plant(
             group.rated_discharge,
             group.rated_head,
             group.unit_capacity,
-            minimum_share(group),
+            _minimum_of(group),
             efficiency_curve(group),
             group.axis_level,
             waterway_of(group.waterway, model.site),

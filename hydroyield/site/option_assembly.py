@@ -14,6 +14,7 @@ from hydroyield.options.money import Cost
 from hydroyield.powerhouse import machine_types
 from hydroyield.quantities import W_PER_KW
 from hydroyield.river import quantile
+from hydroyield.site.assembly import minimum_share
 from hydroyield.site.option_models import Cost as CostBlock
 from hydroyield.site.option_models import OptionMachine, Options
 from hydroyield.site.plant_models import EfficiencyTable, TurbineGroup
@@ -87,9 +88,9 @@ def _machine(site: SiteDescription, wanted: OptionMachine) -> Machine:
 
 def lacking(machine: Machine) -> str:
     """Why a machine cannot be tried at all; empty where it can."""
-    keys, kind = machine.keys, machine_types().get(machine.type)
+    keys = machine.keys
     absent = [key for key in ("efficiency", "minimum_discharge") if key not in keys]
-    if kind is None and absent:
+    if machine.type not in machine_types() and absent:
         return (
             f"type {machine.type} has no typical values; write {' and '.join(absent)} of it under "
             "options.types"
@@ -99,7 +100,7 @@ def lacking(machine: Machine) -> str:
             f"the output_limit of the {machine.type} moves with the size of the unit; write "
             "rated_discharge of the unit that it was drawn for under turbines"
         )
-    least = keys.get("minimum_discharge", 0.0 if kind is None else kind.minimum_discharge)
+    least = minimum_share(machine.type, keys.get("minimum_discharge"), keys.get("jets"))
     if keys.get("starting_discharge", least) < least:
         return (
             f"the {machine.type} would start at less than its minimum of {100 * least:g} %; write "
